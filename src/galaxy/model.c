@@ -1,0 +1,18 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later
+ *
+ * Checks that need more than one parameter of the model. */
+#include "elfinwood/galaxy.h"
+
+ew_status ew_model_check(const ew_model *model, const char **name, ew_error *error) {
+  const double *clusters = model->star_formation.cluster_range;
+  if (!(clusters[0] < clusters[1])) {
+    *name = "star_formation.cluster_range";
+    return ew_fail(error, EW_REFUSED, "clusters need a range of masses");
+  }
+  const double *first = model->first_stars.imf_range;
+  if (!(first[0] < first[1])) {
+    *name = "first_stars.imf_range";
+    return ew_fail(error, EW_REFUSED, "first stars need a range of masses");
+  }
+  return EW_OK;
+}

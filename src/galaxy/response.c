@@ -1,0 +1,70 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later
+ *
+ * Stars respond to gas that comes and goes, inside a dark halo that stays. Slow changes keep r M(<r); fast ones keep
+ * the energy of a star on a circular orbit at the moment of loss. Without dark matter these are the textbook limits 1/e
+ * and e/(2e - 1) for a share e that is left (Hills 1980, ApJ 235, 986). Baryons inside act as a point mass. */
+#include "galaxy/state.h"
+
+#include <math.h>
+
+#define SMALLEST_CHANGE 0.02 /* of the mass inside: smaller changes wait until they have added up */
+#define WIDEST          20.0 /* times the radius before: stars beyond are taken as laid down there */
+enum { BISECTIONS = 50 };
+
+typedef struct {
+  const ew_nfw *halo;
+  double radius; /* before, kpc */
+  double before; /* baryons inside, Msun */
+  double after;
+} change;
+
+static double slow_balance(const change *c, double radius) {
+  return radius * (ew_nfw_mass(c->halo, radius) + c->after) - c->radius * (ew_nfw_mass(c->halo, c->radius) + c->before);
+}
+
+static double potential(const change *c, double radius) {
+  return ew_nfw_potential(c->halo, radius) - EW_GRAVITY * c->after / radius;
+}
+
+static double fast_balance(const change *c, double radius) {
+  double kinetic = 0.5 * EW_GRAVITY * (ew_nfw_mass(c->halo, c->radius) + c->before) / c->radius;
+  double settled = 0.5 * EW_GRAVITY * (ew_nfw_mass(c->halo, radius) + c->after) / radius;
+  return settled + potential(c, radius) - kinetic - potential(c, c->radius);
+}
+
+/* The radius at which `balance`, which rises with radius, is 0. */
+static double settle(const change *c, double (*balance)(const change *, double)) {
+  double low = c->radius / WIDEST, high = c->radius * WIDEST;
+  for (int i = 0; i < BISECTIONS && high / low > 1.0 + 1e-9; i++) {
+    double middle = sqrt(low * high);
+    if (balance(c, middle) < 0.0)
+      low = middle;
+    else
+      high = middle;
+  }
+  return sqrt(low * high);
+}
+
+static void respond(ew_step *step, double (*balance)(const change *, double)) {
+  ew_galaxy *galaxy = step->galaxy;
+  const ew_environment *e = step->environment;
+  if (!e->model->sizes.gas_response || !(galaxy->formed > 0.0))
+    return;
+  double radius = ew_half_mass_radius(galaxy), scale = ew_disc_half_mass_radius(galaxy, e);
+  double stars = 0.5 * ew_ledger_mass(&galaxy->ledger, EW_LIVING_STARS), gas = ew_gas_in_galaxy(galaxy);
+  change c = {&e->halo, radius, stars + galaxy->response_gas * ew_plummer_share(radius, galaxy->response_scale),
+              stars + gas * ew_plummer_share(radius, scale)};
+  if (fabs(c.after - c.before) < SMALLEST_CHANGE * (ew_nfw_mass(c.halo, radius) + c.before))
+    return;
+  ew_scale_components(galaxy, settle(&c, balance) / radius);
+  galaxy->response_gas = gas;
+  galaxy->response_scale = scale;
+}
+
+void ew_respond_slowly(ew_step *step) {
+  respond(step, slow_balance);
+}
+
+void ew_respond_fast(ew_step *step) {
+  respond(step, fast_balance);
+}

@@ -1,0 +1,85 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later
+ *
+ * The parameters of this room: which stars explode, and how many white dwarfs do. */
+#include "elfinwood/stars.h"
+
+#define IWAMOTO "Iwamoto et al. 1999, ApJS 125, 439"
+
+static const ew_choice ia_models[] = {
+    {"W7", "deflagration of a Chandrasekhar-mass white dwarf of solar metallicity", IWAMOTO},
+    {"W70", "the same without metals at birth", IWAMOTO},
+    {"WDD1", "delayed detonation at 1.7e7 g/cm3 after the deflagration of W7", IWAMOTO},
+    {"WDD2", "delayed detonation at 2.2e7 g/cm3 after the deflagration of W7", IWAMOTO},
+    {"WDD3", "delayed detonation at 3.0e7 g/cm3 after the deflagration of W7", IWAMOTO},
+    {"CDD1", "delayed detonation at 1.7e7 g/cm3 after a slow deflagration", IWAMOTO},
+    {"CDD2", "delayed detonation at 2.2e7 g/cm3 after a slow deflagration", IWAMOTO},
+    {NULL, NULL, NULL}};
+
+#define FIELD(name) offsetof(ew_stars_parameters, name)
+
+const ew_parameter ew_stars_rows[] = {
+    {.name = "enrichment.supernova_mass",
+     .type = EW_REAL,
+     .offset = FIELD(supernova_mass),
+     .unit = "Msun",
+     .standard = "8",
+     .low = 7.0,
+     .high = 12.0,
+     .meaning = "Stars born above this mass explode by core collapse, those below leave a white dwarf.",
+     .source = "Smartt 2009, ARA&A 47, 63"},
+    {.name = "enrichment.collapse_mass",
+     .type = EW_REAL,
+     .offset = FIELD(collapse_mass),
+     .unit = "Msun",
+     .standard = "40",
+     .low = 15.0,
+     .high = 100.0,
+     .meaning = "Stars with metals born above this mass collapse and give back nothing but their wind.",
+     .source = "Heger et al. 2003, ApJ 591, 288"},
+    {.name = "enrichment.hypernova_fraction",
+     .type = EW_REAL,
+     .offset = FIELD(hypernova_fraction),
+     .unit = "1",
+     .standard = "0.5",
+     .low = 0.0,
+     .high = 1.0,
+     .meaning = "Share of the exploding stars of 20 Msun and more that explode as hypernovae.",
+     .source = "Kobayashi et al. 2006, ApJ 653, 1145"},
+    {.name = "enrichment.ia_per_mass",
+     .type = EW_REAL,
+     .offset = FIELD(ia_per_mass),
+     .unit = "1/Msun",
+     .standard = "1.3e-3",
+     .low = 0.0,
+     .high = 0.01,
+     .meaning = "Type Ia supernovae per solar mass of stars formed, over 13.7 Gyr.",
+     .source = "Maoz & Graur 2017, ApJ 848, 25"},
+    {.name = "enrichment.ia_slope",
+     .type = EW_REAL,
+     .offset = FIELD(ia_slope),
+     .unit = "1",
+     .standard = "1.1",
+     .low = 0.5,
+     .high = 2.0,
+     .meaning = "The rate of type Ia supernovae falls with the age of the stars to the power of minus this slope.",
+     .source = "Maoz & Graur 2017, ApJ 848, 25"},
+    {.name = "enrichment.ia_delay",
+     .type = EW_REAL,
+     .offset = FIELD(ia_delay),
+     .unit = "Gyr",
+     .standard = "0.04",
+     .low = 0.03,
+     .high = 1.0,
+     .meaning = "Age of the stars at their first type Ia supernova.",
+     .source = "common practice: lifetime of an 8 Msun star"},
+    {.name = "enrichment.ia_model",
+     .type = EW_CHOICE,
+     .offset = FIELD(ia_model),
+     .unit = "",
+     .standard = "\"W7\"",
+     .choices = ia_models,
+     .meaning = "Model of the explosion that gives the ejecta of type Ia supernovae.",
+     .source = IWAMOTO},
+};
+
+const size_t ew_stars_row_count = sizeof ew_stars_rows / sizeof *ew_stars_rows;
