@@ -205,10 +205,14 @@ typedef struct {
   const char *source;  /* paper, or "common practice", "own choice", "from memory" */
 } ew_parameter;
 
+/* Rows of one struct end with a row without a name. Their number, and a check of the struct's real numbers and choices
+ * against them (EW_REFUSED, naming the first at fault) for callers that fill it themselves. */
+size_t ew_rows_count(const ew_parameter *rows);
+EW_CHECKED ew_status ew_rows_check(const ew_parameter *rows, const void *parameters, ew_error *error);
+
 /* The rows that fill one struct, which lies `offset` bytes into the target. Several groups may share a prefix. */
 typedef struct {
   const ew_parameter *rows;
-  size_t count;
   size_t offset;
 } ew_parameter_group;
 

@@ -40,9 +40,7 @@ typedef struct {
 
 /* Parameter rows: groups "cosmology" and "spectrum". */
 extern const ew_parameter ew_cosmology_rows[];
-extern const size_t ew_cosmology_row_count;
 extern const ew_parameter ew_spectrum_rows[];
-extern const size_t ew_spectrum_row_count;
 
 /* ------------------------------------------------------------------------------------------------------------
  * background */

@@ -68,7 +68,6 @@ typedef struct {
 
 /* Group "structure". */
 extern const ew_parameter ew_structure_rows[];
-extern const size_t ew_structure_row_count;
 
 /* Median concentration c_vir of virial mass: Diemer & Joyce 2019, ApJ 871, 168 (median relation for c200c), converted
  * with the NFW profile. Tabulated over 1e4-1e16 Msun and z = 0-40, within 0.5 per cent of the relation; outside,

@@ -61,7 +61,6 @@ typedef struct {
 
 /* Rows of group "enrichment" that belong to this room. */
 extern const ew_parameter ew_stars_rows[];
-extern const size_t ew_stars_row_count;
 
 typedef struct ew_stars ew_stars;
 

@@ -52,7 +52,6 @@ typedef struct {
 
 /* Group "trees". */
 extern const ew_parameter ew_tree_rows[];
-extern const size_t ew_tree_row_count;
 
 /* --------------------------------------------------------------------------------------------------------------
  * builder Binary splits by extended Press-Schechter with the correction of Parkinson, Cole & Helly 2008, MNRAS 383,
@@ -112,7 +111,8 @@ EW_CHECKED ew_status ew_tree_file_create(ew_tree_file **file, const char *path, 
                                          ew_error *error);
 EW_CHECKED ew_status ew_tree_file_append(ew_tree_file *file, const ew_tree *tree, ew_error *error);
 EW_CHECKED ew_status ew_tree_file_finish(ew_tree_file *file, ew_error *error);
-uint64_t ew_tree_file_kept(ew_tree_file *file); /* brings to the disk what it can; whole trees that PATH.partial holds */
+uint64_t
+ew_tree_file_kept(ew_tree_file *file);       /* brings to the disk what it can; whole trees that PATH.partial holds */
 void ew_tree_file_close(ew_tree_file *file); /* accepts NULL */
 
 #endif

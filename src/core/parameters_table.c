@@ -9,15 +9,17 @@
 size_t ew_parameters_count(const ew_parameter_table *table) {
   size_t count = 0;
   for (size_t g = 0; g < table->count; g++)
-    count += table->groups[g].count;
+    count += ew_rows_count(table->groups[g].rows);
   return count;
 }
 
 /* The group that holds row `index`, which is left counted within that group. */
 static const ew_parameter_group *group_of(const ew_parameter_table *table, size_t *index) {
   const ew_parameter_group *group = table->groups;
-  for (; *index >= group->count; group++)
-    *index -= group->count;
+  for (size_t count = ew_rows_count(group->rows); *index >= count; count = ew_rows_count(group->rows)) {
+    *index -= count;
+    group++;
+  }
   return group;
 }
 

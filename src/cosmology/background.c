@@ -3,8 +3,6 @@
  * The expanding background of flat LambdaCDM: construction of ew_cosmology and what follows from E(z) alone. */
 #include "cosmology/background.h"
 
-#include "cosmology/rows.h"
-
 #include <math.h>
 #include <stdlib.h>
 
@@ -26,7 +24,7 @@ static double radiation_share(const ew_cosmology_parameters *parameters) {
 
 static ew_status check(const ew_cosmology *cosmology, ew_error *error) {
   const ew_cosmology_parameters *p = &cosmology->parameters;
-  ew_status status = ew_rows_check(ew_cosmology_rows, ew_cosmology_row_count, p, error);
+  ew_status status = ew_rows_check(ew_cosmology_rows, p, error);
   if (status != EW_OK)
     return status;
   if (p->omega_baryon > p->omega_matter)

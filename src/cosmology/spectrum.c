@@ -3,8 +3,6 @@
  * The linear power spectrum today: construction, normalisation to sigma8 and values at a wavenumber. */
 #include "cosmology/spectrum.h"
 
-#include "cosmology/rows.h"
-
 #include <math.h>
 #include <stdlib.h>
 
@@ -25,7 +23,7 @@ static ew_status normalise(ew_spectrum *spectrum, ew_error *error) {
 ew_status ew_spectrum_new(ew_spectrum **spectrum, const ew_cosmology *cosmology,
                           const ew_spectrum_parameters *parameters, ew_error *error) {
   *spectrum = NULL;
-  ew_status status = ew_rows_check(ew_spectrum_rows, ew_spectrum_row_count, parameters, error);
+  ew_status status = ew_rows_check(ew_spectrum_rows, parameters, error);
   if (status != EW_OK)
     return status;
   ew_spectrum *made = calloc(1, sizeof *made);

@@ -112,7 +112,7 @@ void ew_concentration_free(ew_concentration *concentration) {
 double ew_concentration_at(const ew_concentration *concentration, double mass, double redshift) {
   size_t i, k;
   double u = axis_place(&concentration->mass, log(mass), &i);
-  double w = axis_place(&concentration->epoch, log1p(redshift), &k);
+  double w = axis_place(&concentration->epoch, log(1.0 + redshift), &k);
   const double *below = &concentration->log_value[k * MASSES + i];
   const double *above = below + MASSES;
   double early = above[0] + u * (above[1] - above[0]);

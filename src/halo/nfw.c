@@ -10,15 +10,15 @@
 
 #include <math.h>
 
-/* The series is used below this: its first dropped term is then 1.5e-14 of the sum, and the closed form above it loses
- * at most 2 epsilon / x = 4e-14 by cancellation. */
+/* The series is used below this: its first dropped term is then 2e-14 of the sum, and the closed form above it loses
+ * at most some epsilon / x = 6e-14 by cancellation. */
 #define SERIES_BELOW 0.01
 
 /* Radii are sought up to this many scale radii; nothing asks for the mean density so far out. */
 #define LARGEST_X 1e6
 
-/* Below this m(x)/x^3 = 1/2x holds to 4x/3. */
-#define SMALLEST_X      1e-13
+/* Below this the first guess is the root to all digits, and powers of x would underflow. */
+#define SMALLEST_X      1e-100
 
 #define NEWTON_STEP     1e-9 /* the step after this one is smaller than rounding: convergence is quadratic */
 #define NEWTON_LIMIT    100

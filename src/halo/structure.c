@@ -17,5 +17,5 @@ const ew_parameter ew_structure_rows[] = {
         "Bullock et al. 2001, ApJ 555, 240 (from memory)"),
     ROW(spin_scatter, "1", "0.50", 0.0, 1.5, "Scatter of the natural logarithm of spin.",
         "Bullock et al. 2001, ApJ 555, 240 (from memory)"),
+    {.name = NULL},
 };
-const size_t ew_structure_row_count = sizeof ew_structure_rows / sizeof ew_structure_rows[0];

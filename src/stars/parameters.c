@@ -80,6 +80,5 @@ const ew_parameter ew_stars_rows[] = {
      .choices = ia_models,
      .meaning = "Model of the explosion that gives the ejecta of type Ia supernovae.",
      .source = IWAMOTO},
+    {.name = NULL},
 };
-
-const size_t ew_stars_row_count = sizeof ew_stars_rows / sizeof *ew_stars_rows;

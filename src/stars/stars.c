@@ -8,27 +8,6 @@
 
 #include <stdlib.h>
 
-static ew_status check_number(const ew_parameter *row, double value, ew_error *error) {
-  if (value >= row->low && value <= row->high)
-    return EW_OK;
-  return ew_fail(error, EW_REFUSED, "%s = %g is outside %g to %g", row->name, value, row->low, row->high);
-}
-
-static ew_status check_parameters(const ew_stars_parameters *parameters, ew_error *error) {
-  for (size_t i = 0; i < ew_stars_row_count; i++) {
-    const ew_parameter *row = &ew_stars_rows[i];
-    if (row->type != EW_REAL)
-      continue;
-    double value = *(const double *)(const void *)((const char *)parameters + row->offset);
-    ew_status status = check_number(row, value, error);
-    if (status != EW_OK)
-      return status;
-  }
-  if (parameters->ia_model >= 0 && parameters->ia_model < EW_IA_MODELS)
-    return EW_OK;
-  return ew_fail(error, EW_REFUSED, "enrichment.ia_model: there is no model number %d", parameters->ia_model);
-}
-
 static ew_status fill(ew_stars *stars, ew_error *error) {
   ew_lifetimes_fill(&stars->lifetimes);
   ew_core_collapse_fill(&stars->core_collapse);
@@ -42,7 +21,7 @@ static ew_status fill(ew_stars *stars, ew_error *error) {
 
 ew_status ew_stars_new(ew_stars **stars, const ew_stars_parameters *parameters, ew_error *error) {
   *stars = NULL;
-  ew_status status = check_parameters(parameters, error);
+  ew_status status = ew_rows_check(ew_stars_rows, parameters, error);
   if (status != EW_OK)
     return status;
   ew_stars *made = calloc(1, sizeof *made);

@@ -66,6 +66,5 @@ const ew_parameter ew_tree_rows[] = {
      .high = 0.5,
      .meaning = "gamma2: power of barrier/sigma(halo) in the correction",
      .source = PARKINSON},
+    {.name = NULL},
 };
-
-const size_t ew_tree_row_count = sizeof ew_tree_rows / sizeof ew_tree_rows[0];

@@ -43,7 +43,8 @@ static const ew_parameter first_rows[] = {{"cosmology.hubble", EW_REAL, offsetof
                                            0.2, 1.5, NULL, "The Hubble constant in units of 100 km/s/Mpc.",
                                            "Planck 2018 VI"},
                                           {"random.seed", EW_INTEGER, offsetof(first_part, seed), "1", "1", -HUGE_VAL,
-                                           HUGE_VAL, NULL, "The seed.", "own choice"}};
+                                           HUGE_VAL, NULL, "The seed.", "own choice"},
+                                          {.name = NULL}};
 
 static const ew_parameter second_rows[] = {
     {"trees.follow", EW_FLAG, offsetof(second_part, follow), "", "true", 0, 0, NULL, "Whether to follow.",
@@ -56,11 +57,11 @@ static const ew_parameter second_rows[] = {
     {"roots.mass", EW_REAL, offsetof(second_part, mass), "Msun", "1e10", 0, HUGE_VAL, NULL, "Mass of the root.",
      "own choice"},
     {"roots.count", EW_INTEGER, offsetof(second_part, count), "1", "10", 1, 1e12, NULL, "Number of trees.",
-     "own choice"}};
+     "own choice"},
+    {.name = NULL}};
 
-static const ew_parameter_group groups[] = {
-    {first_rows, sizeof first_rows / sizeof *first_rows, offsetof(target, first)},
-    {second_rows, sizeof second_rows / sizeof *second_rows, offsetof(target, second)}};
+static const ew_parameter_group groups[] = {{first_rows, offsetof(target, first)},
+                                            {second_rows, offsetof(target, second)}};
 
 static const ew_parameter_table table = {groups, 2};
 
@@ -718,8 +719,8 @@ static void test_checks_between_parameters_are_told_alike(void **state) {
 /* ------------------------------------------------------------------------------------------------------- bad tables */
 
 static void expect_bad_row(ew_parameter row, const char *message) {
-  const ew_parameter rows[] = {first_rows[0], row};
-  const ew_parameter_group group = {rows, 2, 0};
+  const ew_parameter rows[] = {first_rows[0], row, {.name = NULL}};
+  const ew_parameter_group group = {rows, 0};
   const ew_parameter_table bad = {&group, 1};
   target filled;
   ew_parameter_values values;

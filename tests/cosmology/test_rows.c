@@ -55,11 +55,11 @@ static void check_row(const ew_parameter *row, const char *prefix) {
 
 static void rows_are_well_formed(void **state) {
   (void)state;
-  for (size_t i = 0; i < ew_cosmology_row_count; i++)
+  for (size_t i = 0; i < ew_rows_count(ew_cosmology_rows); i++)
     check_row(&ew_cosmology_rows[i], "cosmology.");
-  for (size_t i = 0; i < ew_spectrum_row_count; i++)
+  for (size_t i = 0; i < ew_rows_count(ew_spectrum_rows); i++)
     check_row(&ew_spectrum_rows[i], "spectrum.");
-  for (size_t i = 0; i < ew_cosmology_row_count; i++)
+  for (size_t i = 0; i < ew_rows_count(ew_cosmology_rows); i++)
     for (size_t j = 0; j < i; j++)
       assert_true(strcmp(ew_cosmology_rows[i].name, ew_cosmology_rows[j].name) != 0 &&
                   ew_cosmology_rows[i].offset != ew_cosmology_rows[j].offset);
@@ -69,7 +69,7 @@ static void rows_are_well_formed(void **state) {
 static void defaults_are_the_reference_universe(void **state) {
   (void)state;
   ew_cosmology_parameters p = {.radiation = true, .collapse_threshold = -1};
-  for (size_t i = 0; i < ew_cosmology_row_count; i++)
+  for (size_t i = 0; i < ew_rows_count(ew_cosmology_rows); i++)
     set_default(&ew_cosmology_rows[i], &p);
   assert_true(p.hubble == planck18.hubble && p.omega_matter == planck18.omega_matter);
   assert_true(p.omega_baryon == planck18.omega_baryon && p.spectral_index == planck18.spectral_index);
@@ -77,7 +77,7 @@ static void defaults_are_the_reference_universe(void **state) {
   assert_true(p.neutrino_number == planck18.neutrino_number && p.radiation == planck18.radiation);
   assert_int_equal(p.collapse_threshold, EW_THRESHOLD_CONSTANT);
   ew_spectrum_parameters s = {-1, -1};
-  for (size_t i = 0; i < ew_spectrum_row_count; i++)
+  for (size_t i = 0; i < ew_rows_count(ew_spectrum_rows); i++)
     set_default(&ew_spectrum_rows[i], &s);
   assert_int_equal(s.transfer, EW_TRANSFER_EISENSTEIN_HU);
   assert_int_equal(s.filter, EW_FILTER_TOP_HAT);
@@ -105,7 +105,7 @@ static void build_or_refuse(const ew_cosmology_parameters *p) {
 
 static void ends_of_ranges(void **state) {
   (void)state;
-  for (size_t i = 0; i < ew_cosmology_row_count; i++) {
+  for (size_t i = 0; i < ew_rows_count(ew_cosmology_rows); i++) {
     const ew_parameter *row = &ew_cosmology_rows[i];
     for (int end = 0; row->type == EW_REAL && end < 2; end++) {
       ew_cosmology_parameters p = planck18;
@@ -133,7 +133,7 @@ static void corners_of_ranges(void **state) {
 
 static void outside_ranges(void **state) {
   (void)state;
-  for (size_t i = 0; i < ew_cosmology_row_count; i++) {
+  for (size_t i = 0; i < ew_rows_count(ew_cosmology_rows); i++) {
     const ew_parameter *row = &ew_cosmology_rows[i];
     const double values[] = {row->low - 0.1, row->high + 0.1, (double)NAN};
     for (int j = 0; row->type == EW_REAL && j < 3; j++) {

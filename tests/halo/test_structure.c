@@ -19,7 +19,7 @@ static double field(const ew_structure_parameters *target, const ew_parameter *r
 
 static void rows_are_complete(void **state) {
   (void)state;
-  for (size_t i = 0; i < ew_structure_row_count; i++) {
+  for (size_t i = 0; i < ew_rows_count(ew_structure_rows); i++) {
     const ew_parameter *row = &ew_structure_rows[i];
     double standard = strtod(row->standard, NULL);
     assert_int_equal(strncmp(row->name, "structure.", 10), 0);
@@ -33,8 +33,8 @@ static void rows_are_complete(void **state) {
 static void each_row_has_its_field(void **state) {
   (void)state;
   static const ew_structure_parameters published = {0.16, 0.035, 0.50};
-  assert_int_equal(ew_structure_row_count, 3);
-  for (size_t i = 0; i < ew_structure_row_count; i++)
+  assert_int_equal(ew_rows_count(ew_structure_rows), 3);
+  for (size_t i = 0; i < ew_rows_count(ew_structure_rows); i++)
     assert_true(field(&published, &ew_structure_rows[i]) == strtod(ew_structure_rows[i].standard, NULL));
 }
 

@@ -12,8 +12,8 @@ static double *field(ew_stars_parameters *parameters, const ew_parameter *row) {
 
 static void rows_are_complete(void **state) {
   (void)state;
-  assert_int_equal(ew_stars_row_count, 7);
-  for (size_t i = 0; i < ew_stars_row_count; i++) {
+  assert_int_equal(ew_rows_count(ew_stars_rows), 7);
+  for (size_t i = 0; i < ew_rows_count(ew_stars_rows); i++) {
     const ew_parameter *row = &ew_stars_rows[i];
     assert_memory_equal(row->name, "enrichment.", strlen("enrichment."));
     assert_true(row->unit && row->standard && row->meaning[0] && row->source[0]);
@@ -23,7 +23,7 @@ static void rows_are_complete(void **state) {
 
 static void defaults_are_the_standard_model(void **state) {
   (void)state;
-  for (size_t i = 0; i < ew_stars_row_count; i++) {
+  for (size_t i = 0; i < ew_rows_count(ew_stars_rows); i++) {
     ew_stars_parameters expected = standard;
     if (ew_stars_rows[i].type == EW_REAL)
       assert_true(strtod(ew_stars_rows[i].standard, NULL) == *field(&expected, &ew_stars_rows[i]));
@@ -42,7 +42,7 @@ static void assert_refused(ew_stars_parameters parameters, const char *name) {
 
 static void values_outside_the_ranges_are_refused(void **state) {
   (void)state;
-  for (size_t i = 0; i < ew_stars_row_count; i++) {
+  for (size_t i = 0; i < ew_rows_count(ew_stars_rows); i++) {
     const ew_parameter *row = &ew_stars_rows[i];
     if (row->type != EW_REAL)
       continue;
@@ -66,7 +66,7 @@ static void models_that_do_not_exist_are_refused(void **state) {
 
 static void values_at_the_ends_of_the_ranges_are_accepted(void **state) {
   (void)state;
-  for (size_t i = 0; i < ew_stars_row_count; i++) {
+  for (size_t i = 0; i < ew_rows_count(ew_stars_rows); i++) {
     const ew_parameter *row = &ew_stars_rows[i];
     if (row->type != EW_REAL)
       continue;

@@ -45,7 +45,7 @@ static void ejecta_are_the_published_ones(void **state) {
     double iron, all;
   } published[] = {{"W7", 0.7490, 1.371},   {"W70", 0.7752, 1.366},  {"WDD1", 0.6718, 1.345}, {"WDD2", 0.7920, 1.339},
                    {"WDD3", 0.8703, 1.335}, {"CDD1", 0.6480, 1.334}, {"CDD2", 0.8345, 1.356}};
-  const ew_choice *choices = ew_stars_rows[ew_stars_row_count - 1].choices;
+  const ew_choice *choices = ew_stars_rows[ew_rows_count(ew_stars_rows) - 1].choices;
   for (int i = 0; i < 7; i++) {
     ew_stars_parameters parameters = standard;
     parameters.ia_model = i;
