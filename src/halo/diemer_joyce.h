@@ -14,8 +14,8 @@ typedef struct {
 
 diemer_joyce_epoch diemer_joyce_at(const ew_spectrum *spectrum, double redshift);
 
-/* c200c of M200c [Msun]. EW_FAILED if the equation has no solution on the branch where concentration falls with peak
- * height, which does not happen for a spectrum whose sigma falls with mass. */
+/* c200c of M200c [Msun]. EW_FAILED if the equation has no solution on its upper branch, which does not happen for a
+ * spectrum whose sigma falls with mass. */
 EW_CHECKED ew_status diemer_joyce_concentration(const diemer_joyce_epoch *epoch, double mass_200c,
                                                 double *concentration, ew_error *error);
 
