@@ -58,7 +58,7 @@ EW_CHECKED ew_status ew_spectrum_write(const ew_spectrum *spectrum, const char *
  * summary */
 
 /* Collects what the closing tables need while rows pass by, in memory that does not grow with their number. Only
- * central galaxies count, each with its weight. Quantiles are good to 0.002 dex or better (time_90: 2.5 Myr). */
+ * central galaxies count, each with its weight. Quantiles are good to 0.004 dex or better (time_90: 5 Myr). */
 typedef struct ew_summary ew_summary;
 ew_summary *ew_summary_new(void); /* NULL when memory is short */
 void ew_summary_free(ew_summary *summary);

@@ -125,12 +125,12 @@ typedef struct {
 ew_stream ew_stream_open(const ew_draws *draws, ew_process process, uint64_t branch_key, uint64_t slot);
 
 uint64_t ew_draw_word(ew_stream *stream);
-double ew_draw_uniform(ew_stream *stream);     /* open interval (0, 1), 53 bits */
+double ew_draw_uniform(ew_stream *stream);     /* open interval (0, 1), 52 bits */
 double ew_draw_exponential(ew_stream *stream); /* mean 1; one word */
 double ew_draw_normal(ew_stream *stream);      /* mean 0, variance 1, by inversion: one word, monotonic in it */
 
 /* Poisson count by inversion: one word, monotonic in it and in the mean, so that paired models draw alike. `mean` >= 0;
- * above 1e8 the normal limit is used. A mean that is not finite gives 0. */
+ * above 600 by an expansion of the quantile, good to 1e-6 in probability. A mean that is not finite gives 0. */
 uint64_t ew_draw_poisson(ew_stream *stream, double mean);
 
 /* Intrinsic names of branches: a constant at the root; for a child a mix of its parent's key and the ordinal of the

@@ -6,27 +6,28 @@
 #include <math.h>
 #include <stddef.h>
 
-static double cell_width(ew_distribution_range range) {
-  return (range.high - range.low) / EW_DISTRIBUTION_CELLS;
+static size_t cell_of(ew_distribution_range range, double value) {
+  double place = (value - range.low) / (range.high - range.low) * EW_DISTRIBUTION_CELLS;
+  double last = EW_DISTRIBUTION_CELLS - 1;
+  return place > 0.0 ? (size_t)(place < last ? place : last) : 0;
 }
 
 void ew_distribution_add(ew_distribution *distribution, ew_distribution_range range, double value, double weight) {
   if (!isfinite(value))
     return;
-  double place = (value - range.low) / cell_width(range);
-  double last = EW_DISTRIBUTION_CELLS - 1;
-  size_t cell = place > 0.0 ? (size_t)(place < last ? place : last) : 0;
+  size_t cell = cell_of(range, value);
   distribution->weight[cell] += weight;
+  distribution->sum[cell] += weight * value;
   distribution->total += weight;
 }
 
-double ew_distribution_quantile(const ew_distribution *distribution, ew_distribution_range range, double share) {
-  double wanted = share * distribution->total, below = 0.0;
-  for (size_t i = 0; i < EW_DISTRIBUTION_CELLS; i++) {
-    double weight = distribution->weight[i];
-    if (weight > 0.0 && below + weight >= wanted)
-      return range.low + ((double)i + (wanted - below) / weight) * cell_width(range);
-    below += weight;
+double ew_distribution_quantile(const ew_distribution *distribution, double share) {
+  double wanted = share * distribution->total, reached = 0.0, value = (double)NAN;
+  for (size_t i = 0; i < EW_DISTRIBUTION_CELLS && (isnan(value) || reached < wanted); i++) {
+    if (!(distribution->weight[i] > 0.0))
+      continue;
+    reached += distribution->weight[i];
+    value = distribution->sum[i] / distribution->weight[i];
   }
-  return distribution->total > 0.0 ? range.high : (double)NAN;
+  return value;
 }

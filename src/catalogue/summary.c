@@ -127,7 +127,7 @@ static void cell_text(char text[CELL_SIZE], const quantity *what, const ew_distr
   static const double shares[3] = {0.5, 0.16, 0.84};
   double value[3];
   for (size_t i = 0; i < 3; i++) {
-    value[i] = ew_distribution_quantile(distribution, what->range, shares[i]);
+    value[i] = ew_distribution_quantile(distribution, shares[i]);
     value[i] = what->logarithmic ? pow(10.0, value[i]) : value[i];
   }
   if (distribution->total > 0.0)
@@ -185,8 +185,7 @@ static void print_mass_bin(const mass_bin *bin, size_t index, FILE *out) {
     snprintf(label, sizeof label, "3e%d - 1e%d", decade, decade + 1);
   print_label(label, bin->number, out);
   if (bin->luminous > 0.0)
-    snprintf(mass, sizeof mass, "%.2e",
-             pow(10.0, ew_distribution_quantile(&bin->stellar_mass, stellar_mass_range, 0.5)));
+    snprintf(mass, sizeof mass, "%.2e", pow(10.0, ew_distribution_quantile(&bin->stellar_mass, 0.5)));
   fprintf(out, "  %8.3f  %s\n", bin->luminous / bin->number, mass);
 }
 

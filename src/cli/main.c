@@ -7,21 +7,12 @@
 #include "core/hdf.h"
 
 #include <errno.h>
-#include <fcntl.h>
 #include <string.h>
-#include <unistd.h>
 
 static const ew_command *const commands[] = {
     &ew_command_run, &ew_command_check, &ew_command_parameters, &ew_command_trees, &ew_command_spectrum,
 };
 enum { COMMAND_COUNT = sizeof commands / sizeof commands[0] };
-
-/* Output files must not get the numbers of standard streams that are closed: what is printed would go into them. */
-static void occupy_standard_streams(void) {
-  for (int stream = STDIN_FILENO; stream <= STDERR_FILENO; stream++)
-    if (fcntl(stream, F_GETFD) == -1 && errno == EBADF)
-      (void)open("/dev/null", stream == STDIN_FILENO ? O_WRONLY : O_RDONLY);
-}
 
 /* A write to a closed pipe or beyond the allowed file size fails with a reason instead of killing the program. */
 static void ignore_write_signals(void) {
@@ -91,7 +82,6 @@ static ew_status flush_results(ew_status status, ew_error *error) {
 }
 
 int main(int count, char **words) {
-  occupy_standard_streams();
   ignore_write_signals();
   ew_core_start();
   ew_hdf_start();

@@ -135,7 +135,7 @@ static void print_summary(const nursery *trees, const ew_request *request, doubl
   double quantile[3];
   static const double shares[3] = {0.5, 0.16, 0.84};
   for (size_t i = 0; i < 3; i++)
-    quantile[i] = ew_distribution_quantile(&trees->formation, formation_range, shares[i]);
+    quantile[i] = ew_distribution_quantile(&trees->formation, shares[i]);
   long long count = request->settings.roots.count;
   printf("trees               %lld\n", count);
   printf("branches            %llu\n", (unsigned long long)trees->branches);

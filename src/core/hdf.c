@@ -334,7 +334,7 @@ static ew_status make_room_in_memory(ew_hdf_column *column, size_t rows, ew_erro
 
 ew_status ew_hdf_push(ew_hdf_column *column, const void *values, size_t rows, ew_error *error) {
   ew_status status = make_room_in_memory(column, column->waiting + rows, error);
-  if (status != EW_OK)
+  if (status != EW_OK || rows == 0)
     return status;
   size_t row_size = column->width * VALUE_SIZE;
   memcpy(column->values + column->waiting * row_size, values, rows * row_size);
@@ -370,6 +370,8 @@ static bool append_sealed(ew_hdf_column *column) {
 }
 
 static void drop_sealed(ew_hdf_column *column) {
+  if (column->sealed == 0)
+    return;
   size_t row_size = column->width * VALUE_SIZE;
   memmove(column->values, column->values + column->sealed * row_size, (column->waiting - column->sealed) * row_size);
   column->rows += column->sealed;

@@ -52,8 +52,8 @@ static bool is_plain_value(const char *text) {
   return true;
 }
 
-/* Inside a list, so that nothing behind the value can go unnoticed: a second setting makes a second member of the root,
- * a second value a second element, and a comment hides the closing bracket. */
+/* Inside a list, so that nothing behind the value can go unnoticed: a second value makes a second element, and a
+ * comment hides the closing bracket. A second setting would need a name, which is no plain value. */
 ew_status ew_parse_value(config_t *config, const char *text, const config_setting_t **setting, ew_error *error) {
   static const char shape[] = "value = (%s);";
   *setting = NULL;
@@ -67,10 +67,9 @@ ew_status ew_parse_value(config_t *config, const char *text, const config_settin
   bool parsed = false;
   ew_status status = ew_parse_text(config, whole, &parsed, error);
   free(whole);
-  const config_setting_t *root = config_root_setting(config);
-  if (!parsed || config_setting_length(root) != 1)
+  if (!parsed)
     return status;
-  const config_setting_t *list = config_setting_get_elem(root, 0);
+  const config_setting_t *list = config_setting_get_elem(config_root_setting(config), 0);
   if (config_setting_length(list) == 1)
     *setting = config_setting_get_elem(list, 0);
   return status;

@@ -37,6 +37,26 @@ static void add_deaths(ew_deaths *to, const ew_deaths *from) {
   }
 }
 
+static ew_deaths take_due(ew_galaxy *galaxy, size_t slot) {
+  ew_deaths due = {0};
+  while (galaxy->pending_slot <= slot) {
+    ew_deaths *first = &galaxy->pending[galaxy->pending_first];
+    add_deaths(&due, first);
+    memset(first, 0, sizeof *first);
+    galaxy->pending_first = (galaxy->pending_first + 1) % galaxy->pending_count;
+    galaxy->pending_slot++;
+  }
+  return due;
+}
+
+/* Turns the ring of a galaxy that was idle to the slot; what was due before is due then. */
+static void turn_to(ew_galaxy *galaxy, size_t slot) {
+  if (galaxy->pending_slot >= slot)
+    return;
+  ew_deaths overdue = take_due(galaxy, slot - 1);
+  add_deaths(entry(galaxy, slot), &overdue);
+}
+
 static ew_deaths deaths_of(const ew_dying *dying) {
   const ew_death *death = &dying->death;
   bool explodes = death->energy > 0.0;
@@ -57,6 +77,7 @@ void ew_schedule_death(ew_step *step, const ew_dying *dying) {
     step->short_of_memory = true;
     return;
   }
+  turn_to(galaxy, e->slot);
   double time = 0.5 * (step->start + step->end) + dying->age;
   size_t slot = (size_t)(time / e->calendar->step);
   ew_deaths deaths = deaths_of(dying);
@@ -86,24 +107,24 @@ static void disturb_gas(ew_step *step, double energy) {
   ew_release_supernovae(galaxy, 1.0);
 }
 
-/* Ejecta and what was made reach the gas as one, so that what a star destroys is taken from what it gives back. */
+/* Makes elements out of others, at most of all that the gas has of those. */
+static void make_elements(ew_ledger *ledger, ew_composition made) {
+  double part = 1.0;
+  for (int i = 0; i < EW_ELEMENT_COUNT; i++)
+    if (-made.mass[i] > ledger->in[EW_DISC_GAS].mass[i])
+      part = fmin(part, ledger->in[EW_DISC_GAS].mass[i] / -made.mass[i]);
+  for (int i = 0; i < EW_ELEMENT_COUNT; i++)
+    made.mass[i] *= part;
+  ew_ledger_move(ledger, EW_MADE, EW_DISC_GAS, &made);
+}
+
+/* Ejecta and what was made reach the gas as one, so that what a star destroys is taken from what it gives back. A small
+ * cluster may have drawn more massive stars than it has mass: then less is given back. */
 static void enrich(ew_galaxy *galaxy, const ew_deaths *deaths) {
   ew_ledger_move(&galaxy->ledger, EW_LIVING_STARS, EW_REMNANTS, &deaths->remnant);
   ew_ledger_move(&galaxy->ledger, EW_LIVING_STARS, EW_DISC_GAS, &deaths->ejected);
-  ew_ledger_move(&galaxy->ledger, EW_MADE, EW_DISC_GAS, &deaths->made);
+  make_elements(&galaxy->ledger, deaths->made);
   ew_hold_supernovae(galaxy, deaths->count);
-}
-
-static ew_deaths take_due(ew_galaxy *galaxy, size_t slot) {
-  ew_deaths due = {0};
-  while (galaxy->pending_slot <= slot) {
-    ew_deaths *first = &galaxy->pending[galaxy->pending_first];
-    add_deaths(&due, first);
-    memset(first, 0, sizeof *first);
-    galaxy->pending_first = (galaxy->pending_first + 1) % galaxy->pending_count;
-    galaxy->pending_slot++;
-  }
-  return due;
 }
 
 void ew_explode_supernovae(ew_step *step) {
@@ -123,6 +144,7 @@ bool ew_pending_join(ew_galaxy *galaxy, const ew_galaxy *other, const ew_calenda
     return true;
   if (!galaxy->pending && !make_ring(galaxy, calendar, other->pending_slot))
     return false;
+  turn_to(galaxy, other->pending_slot);
   for (size_t k = 0; k < other->pending_count; k++) {
     size_t slot = other->pending_slot + k;
     const ew_deaths *deaths = &other->pending[(other->pending_first + k) % other->pending_count];

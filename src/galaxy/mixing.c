@@ -83,7 +83,7 @@ double ew_effective_supernovae(const ew_galaxy *galaxy) {
   return galaxy->held_squares > 0.0 ? fmax(galaxy->held * galaxy->held / galaxy->held_squares, 1.0) : 1.0;
 }
 
-void ew_mix_cluster(const ew_step *step, ew_stream *stream, ew_composition *fraction) {
+void ew_mix_cluster(const ew_step *step, ew_stream *stream, double cluster_mass, ew_composition *fraction) {
   const ew_mixing_parameters *p = &step->environment->model->mixing;
   const ew_composition *gas = &step->galaxy->ledger.in[EW_DISC_GAS];
   double mass = ew_composition_mass(gas), number = ew_effective_supernovae(step->galaxy);
@@ -91,8 +91,10 @@ void ew_mix_cluster(const ew_step *step, ew_stream *stream, ew_composition *frac
   double common = mean_one_factor(scatter, ew_draw_normal(stream));
   for (int i = 0; i < EW_ELEMENT_COUNT; i++) {
     fraction->mass[i] = gas->mass[i] / mass;
-    if (i > EW_HELIUM)
-      fraction->mass[i] *= common * mean_one_factor(p->element_scatter, ew_draw_normal(stream));
+    if (i <= EW_HELIUM)
+      continue;
+    fraction->mass[i] *= common * mean_one_factor(p->element_scatter, ew_draw_normal(stream));
+    fraction->mass[i] = fmin(fraction->mass[i], gas->mass[i] / cluster_mass);
   }
   fill_up(fraction);
 }

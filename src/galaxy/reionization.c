@@ -102,7 +102,7 @@ double ew_baryon_share(const ew_reionization_parameters *parameters, double mass
 /* Closed form within 8 per cent of the paper's table for reionization at z = 9; for other redshifts the turn-on moves
  * along (own choice). */
 double ew_characteristic_mass(double hubble, double redshift, double reionization_redshift) {
-  double turn_on = redshift / (reionization_redshift - 0.6);
+  double turn_on = redshift / (reionization_redshift - 0.63);
   double switched = turn_on < 0.6 ? 1.0 : exp(-pow(turn_on, 17.6));
   return 6.5e9 / hubble * exp(-0.604 * redshift) * switched;
 }

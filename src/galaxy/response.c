@@ -7,9 +7,10 @@
 
 #include <math.h>
 
-#define SMALLEST_CHANGE 0.02 /* of the mass inside: smaller changes wait until they have added up */
-#define WIDEST          20.0 /* times the radius before: stars beyond are taken as laid down there */
-enum { BISECTIONS = 50 };
+#define SMALLEST_CHANGE  0.02 /* of the mass inside: smaller changes wait until they have added up */
+#define STRIDE           1.3
+#define RADIUS_PRECISION 1e-7
+enum { MOST_STEPS = 60, WIDEST_STRIDES = 12 }; /* stars that would go further than 23 times out are laid down there */
 
 typedef struct {
   const ew_nfw *halo;
@@ -32,20 +33,46 @@ static double fast_balance(const change *c, double radius) {
   return settled + potential(c, radius) - kinetic - potential(c, c->radius);
 }
 
-/* The radius at which `balance`, which rises with radius, is 0. */
-static double settle(const change *c, double (*balance)(const change *, double)) {
-  double low = c->radius / WIDEST, high = c->radius * WIDEST;
-  for (int i = 0; i < BISECTIONS && high / low > 1.0 + 1e-9; i++) {
-    double middle = sqrt(low * high);
-    if (balance(c, middle) < 0.0)
-      low = middle;
-    else
-      high = middle;
+typedef double (*balance_function)(const change *, double);
+
+/* A radius on the other side of the balance, in strides away from the radius before; the widest if there is none. */
+static double across(const change *c, balance_function balance, bool outward, double *value) {
+  double radius = c->radius;
+  for (int i = 0; i < WIDEST_STRIDES; i++) {
+    radius = outward ? radius * STRIDE : radius / STRIDE;
+    *value = balance(c, radius);
+    if (outward == (*value > 0.0))
+      break;
   }
-  return sqrt(low * high);
+  return radius;
 }
 
-static void respond(ew_step *step, double (*balance)(const change *, double)) {
+/* The radius at which `balance`, which rises with radius, is 0: false position with the Illinois rule, which halves the
+ * value at an end that stays. */
+static double settle(const change *c, balance_function balance) {
+  double near = c->radius, near_value = balance(c, near), far_value;
+  if (near_value == 0.0)
+    return near;
+  double far = across(c, balance, near_value < 0.0, &far_value);
+  if ((near_value < 0.0) == (far_value < 0.0))
+    return far;
+  for (int i = 0; i < MOST_STEPS && fabs(far - near) > RADIUS_PRECISION * far; i++) {
+    double next = far - far_value * (far - near) / (far_value - near_value), value = balance(c, next);
+    if ((value < 0.0) == (far_value < 0.0)) {
+      near_value *= 0.5;
+    } else {
+      near = far;
+      near_value = far_value;
+    }
+    far = next;
+    far_value = value;
+    if (value == 0.0)
+      break;
+  }
+  return far;
+}
+
+static void respond(ew_step *step, balance_function balance) {
   ew_galaxy *galaxy = step->galaxy;
   const ew_environment *e = step->environment;
   if (!e->model->sizes.gas_response || !(galaxy->formed > 0.0))

@@ -106,12 +106,15 @@ const ew_process_record ew_star_formation_process = {
 #define PRESSURE_OF_COLUMN 33.12  /* (pi G/2) (1 Msun/pc^2)^2 / k [K cm^-3] */
 #define KPC2_IN_PC2        1e6
 #define HEAVIEST_STAR      100.0 /* Msun, of the normal IMF */
-enum { MOST_CLUSTERS = 16 };     /* drawn one by one in a step */
+#define MANY_CLUSTERS      8.0   /* expected in a step: more are drawn by classes of mass */
+enum { CLUSTER_CLASSES = 8 };
 
-/* Radii, in scale lengths, that halve eight rings of equal mass of an exponential disc. */
+/* Radii, in scale lengths, that halve eight rings of equal mass of an exponential disc, and exp(-radius) there. */
 enum { RINGS = 8 };
 static const double ring_radius[RINGS] = {0.403527, 0.789671, 1.131537, 1.486065,
                                           1.886842, 2.381458, 3.080097, 4.472285};
+static const double ring_column[RINGS] = {0.667960, 0.453994, 0.322537, 0.226261,
+                                          0.151550, 0.092416, 0.045955, 0.011421};
 
 double ew_disc_half_mass_radius(const ew_galaxy *galaxy, const ew_environment *environment) {
   double scale = galaxy->luck.spin / sqrt(2.0) * environment->halo.radius * environment->model->sizes.birth_factor;
@@ -134,7 +137,7 @@ static double molecular_share(const ew_step *step, double gas_mass) {
   double star_column = stars > 0.0 ? p->dispersion_ratio * central_column(star_mass, stars) : 0.0;
   double stretch = stars > 0.0 ? disc / stars : 0.0, sum = 0.0;
   for (int i = 0; i < RINGS; i++) {
-    double gas = gas_column * exp(-ring_radius[i]);
+    double gas = gas_column * ring_column[i];
     double pressure = PRESSURE_OF_COLUMN * gas * (gas + star_column * exp(-ring_radius[i] * stretch));
     double ratio = pow(pressure / p->pressure_scale, p->pressure_slope);
     sum += ratio / (1.0 + ratio);
@@ -214,17 +217,23 @@ static void write_down(birth *b, double mass, const ew_composition *fraction) {
   add_scaled(&b->formed_elements, fraction, mass);
 }
 
+/* Hydrogen and helium of the disc: what a cluster needs, whatever metals it draws. */
+static double light_gas(const birth *b) {
+  const ew_composition *gas = &b->step->galaxy->ledger.in[EW_DISC_GAS];
+  return gas->mass[EW_HYDROGEN] + gas->mass[EW_HELIUM];
+}
+
 /* `alike` clusters of that mass and one composition; false if there is no gas or memory for them. */
 static bool form_clusters_alike(birth *b, double mass, double alike) {
   const ew_star_formation_parameters *p = &b->step->environment->model->star_formation;
   double total = mass * alike;
-  if (total > p->cluster_efficiency * ew_ledger_mass(&b->step->galaxy->ledger, EW_DISC_GAS))
+  if (total > p->cluster_efficiency * light_gas(b))
     return false;
   b->event = b->event ? b->event : ew_event_of_slot(b->step, false);
   if (!b->event)
     return false;
   ew_composition fraction;
-  ew_mix_cluster(b->step, &b->mixing, &fraction);
+  ew_mix_cluster(b->step, &b->mixing, total, &fraction);
   take_from_gas(b, total, &fraction);
   write_down(b, total, &fraction);
   if (alike == 1.0 && mass < p->star_by_star_mass) {
@@ -255,22 +264,36 @@ static void finish_birth(birth *b) {
   }
 }
 
-/* Many clusters are drawn as strata of the mass function, each of as many alike. */
+static void form_one_by_one(birth *b, double number, const ew_power_law *law) {
+  uint64_t count = ew_draw_poisson(&b->masses, number);
+  for (uint64_t i = 0; i < count && !b->step->short_of_memory; i++)
+    if (!form_clusters_alike(b, ew_power_law_draw(law, ew_draw_uniform(&b->masses)), 1.0))
+      return;
+}
+
+/* Classes even in log mass: how many clusters each has is Poisson, so the sum scatters as that of single clusters
+ * does. All of a class have its mean mass. */
+static void form_by_classes(birth *b, double number, const ew_power_law *law) {
+  double width = pow(law->high / law->low, 1.0 / CLUSTER_CLASSES);
+  for (int i = 0; i < CLUSTER_CLASSES && !b->step->short_of_memory; i++) {
+    double low = law->low * pow(width, i);
+    ew_power_law members = {law->slope, low, low * width};
+    double count = (double)ew_draw_poisson(&b->masses, number * ew_power_law_share(law, low, low * width));
+    if (count > 0.0 && !form_clusters_alike(b, ew_power_law_mean(&members), count))
+      return;
+  }
+}
+
 static void form_clusters(ew_step *step, double expected, const ew_power_law *law) {
   birth b = {.step = step,
              .masses = ew_step_stream(step, EW_PROCESS_BURSTS, EW_DRAW_CLUSTERS),
              .mixing = ew_step_stream(step, EW_PROCESS_MIXING, EW_DRAW_MIXING),
              .deaths = ew_step_stream(step, EW_PROCESS_BURSTS, EW_DRAW_SUPERNOVAE)};
-  uint64_t count = ew_draw_poisson(&b.masses, expected / ew_power_law_mean(law));
-  bool many = count > MOST_CLUSTERS;
-  uint64_t draws = many ? MOST_CLUSTERS : count;
-  double alike = many ? (double)count / MOST_CLUSTERS : 1.0;
-  for (uint64_t i = 0; i < draws && !step->short_of_memory; i++) {
-    double u = ew_draw_uniform(&b.masses);
-    double mass = ew_power_law_draw(law, many ? ((double)i + u) / MOST_CLUSTERS : u);
-    if (!form_clusters_alike(&b, mass, alike))
-      break;
-  }
+  double number = expected / ew_power_law_mean(law);
+  if (number > MANY_CLUSTERS)
+    form_by_classes(&b, number, law);
+  else
+    form_one_by_one(&b, number, law);
   finish_birth(&b);
 }
 

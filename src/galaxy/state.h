@@ -145,9 +145,9 @@ void ew_respond_fast(ew_step *step);
 /* Composition of gas from outside with that mass fraction of metals. */
 ew_composition ew_external_gas(const ew_world *world, double mass, double metal_fraction);
 
-/* A cluster of stars takes its share of metals: the gas's mean, scattered by incomplete mixing (mixing.c). `fraction`
- * gets mass fractions that add up to 1. */
-void ew_mix_cluster(const ew_step *step, ew_stream *stream, ew_composition *fraction);
+/* A cluster of stars takes its share of metals: the gas's mean, scattered by incomplete mixing, but no more than the
+ * gas has (mixing.c). `fraction` gets mass fractions that add up to 1. */
+void ew_mix_cluster(const ew_step *step, ew_stream *stream, double cluster_mass, ew_composition *fraction);
 
 /* Bookkeeping of newly formed stars (stars_book.c). */
 ew_star_event *ew_event_of_slot(ew_step *step, bool metal_free);

@@ -12,10 +12,10 @@
 #include <math.h>
 #include <stdlib.h>
 
-#define LONGEST_STRIDE   0.35  /* of ln M between two nodes */
-#define NODE_PRECISION   0.008 /* relative error of linear mass between nodes: the type promises 0.01 */
-#define SHORTEST_STRIDE  0.01
-#define LARGEST_ATTEMPTS 1000 /* of the rejection, which accepts about every second share */
+#define NODE_PRECISION   0.0085 /* relative error half-way between nodes: the type promises 0.01 anywhere between */
+#define LONGEST_STRIDE   0.25   /* of ln M between nodes: an exponential is then 0.0078 off a straight line */
+#define SHORTEST_STRIDE  0.03   /* even the plunge onto the resolution is within 0.005 of a straight line over this */
+#define LARGEST_ATTEMPTS 1000   /* of the rejection, which accepts about every second share */
 
 struct ew_tree_builder {
   ew_split_tables tables;
@@ -26,9 +26,12 @@ struct ew_tree_builder {
 ew_status ew_tree_builder_new(ew_tree_builder **builder, const ew_spectrum *spectrum,
                               const ew_tree_parameters *parameters, double largest_mass, ew_error *error) {
   *builder = NULL;
-  if (!(parameters->resolution_mass >= EW_LOWEST_MASS && largest_mass <= EW_HIGHEST_MASS))
-    return ew_fail(error, EW_REFUSED, "trees from %g to %g Msun are outside the tables of sigma(M) (%g to %g Msun)",
-                   parameters->resolution_mass, largest_mass, EW_LOWEST_MASS, EW_HIGHEST_MASS);
+  ew_status status = ew_rows_check(ew_tree_rows, parameters, error);
+  if (status != EW_OK)
+    return status;
+  if (!(largest_mass <= EW_HIGHEST_MASS))
+    return ew_fail(error, EW_REFUSED, "roots of %g Msun are outside the table of sigma(M); allowed: up to %g Msun",
+                   largest_mass, EW_HIGHEST_MASS);
   if (!(parameters->resolution_mass < largest_mass))
     return ew_fail(error, EW_REFUSED,
                    "trees.resolution_mass = %g Msun leaves nothing to grow; allowed: below the largest root, %g Msun",
@@ -38,7 +41,7 @@ ew_status ew_tree_builder_new(ew_tree_builder **builder, const ew_spectrum *spec
     return ew_fail_memory(error, "the tree builder");
   fresh->cosmology = ew_spectrum_cosmology(spectrum);
   fresh->largest_mass = largest_mass;
-  ew_status status = ew_split_tables_make(&fresh->tables, spectrum, parameters, largest_mass, error);
+  status = ew_split_tables_make(&fresh->tables, spectrum, parameters, largest_mass, error);
   if (status != EW_OK) {
     free(fresh);
     return status;
@@ -67,53 +70,61 @@ double ew_smooth_rate(const ew_tree_builder *builder, double mass, double barrie
 /* A halo on its walk back in time. */
 typedef struct {
   double log_mass;
+  double drift; /* T of that mass */
   double clock;
+  double redshift;
 } walker;
 
-/* Where the drift of `from` brings it at a smaller mass. */
-static double clock_after_drift(const ew_split_tables *t, const walker *from, double log_mass) {
-  return from->clock + ew_table_at(&t->drift, from->log_mass) - ew_table_at(&t->drift, log_mass);
+/* The halo when smooth loss has brought it down to that mass. Its redshift never falls on the way and stays at or below
+ * the highest followed, where the table's straight lines would miss either by a hair. */
+static walker drifted(const ew_split_tables *t, const walker *from, double log_mass) {
+  double drift = ew_table_at(&t->drift, log_mass), clock = from->clock + (from->drift - drift);
+  double redshift = fmin(ew_table_at(&t->redshift, clock), t->parameters.highest_redshift);
+  return (walker){log_mass, drift, clock, fmax(redshift, from->redshift)};
 }
 
-/* Relative error at the middle of a straight line in (redshift, mass) between two points of one drift. */
-static double chord_error(const ew_split_tables *t, const walker *from, double log_mass) {
-  double middle = 0.5 * (from->log_mass + log_mass);
-  double z0 = ew_table_at(&t->redshift, from->clock);
-  double z1 = ew_table_at(&t->redshift, clock_after_drift(t, from, log_mass));
-  double z = ew_table_at(&t->redshift, clock_after_drift(t, from, middle));
-  double m0 = exp(from->log_mass - middle), m1 = exp(log_mass - middle);
-  return z1 > z0 ? fabs(m0 + (m1 - m0) * (z - z0) / (z1 - z0) - 1.0) : 0.0;
+/* Relative error of a straight line in (redshift, mass) half-way along the drift between two nodes. */
+static double chord_error(const ew_split_tables *t, const walker *from, const walker *to) {
+  if (!(to->redshift > from->redshift))
+    return 0.0;
+  walker middle = drifted(t, from, 0.5 * (from->log_mass + to->log_mass));
+  double part = (middle.redshift - from->redshift) / (to->redshift - from->redshift);
+  double from_mass = exp(from->log_mass - middle.log_mass), to_mass = 1.0 / from_mass;
+  return fabs(from_mass + (to_mass - from_mass) * part - 1.0);
 }
 
-/* The next node on the way to `goal`: all the way if a straight line is good enough. */
-static double next_node_mass(const ew_split_tables *t, const walker *from, double goal) {
-  double stride = fmin(from->log_mass - goal, LONGEST_STRIDE);
-  if (stride <= SHORTEST_STRIDE)
-    return goal;
-  while (stride > SHORTEST_STRIDE && chord_error(t, from, from->log_mass - stride) > NODE_PRECISION)
-    stride *= 0.5;
-  return stride < from->log_mass - goal ? from->log_mass - stride : goal;
+/* The next node on the way to `goal`: the goal itself if a straight line is good enough, else one of a fixed series of
+ * strides, so that nodes do not depend on how far the way goes on. */
+static walker next_node(const ew_split_tables *t, const walker *from, double goal) {
+  double stride = LONGEST_STRIDE;
+  for (;;) {
+    walker next = drifted(t, from, fmax(from->log_mass - stride, goal));
+    if (from->log_mass - next.log_mass <= SHORTEST_STRIDE || chord_error(t, from, &next) <= NODE_PRECISION)
+      return next;
+    do
+      stride *= 0.5;
+    while (from->log_mass - stride <= goal);
+  }
 }
 
 /* Follows the drift to `goal`, laying nodes on the way but none at the goal itself. */
 static bool drift_to(const ew_split_tables *t, walker *halo, double goal, ew_tree_memory *memory) {
   for (;;) {
-    double next = next_node_mass(t, halo, goal);
-    halo->clock = clock_after_drift(t, halo, next);
-    halo->log_mass = next;
-    if (next <= goal)
+    *halo = next_node(t, halo, goal);
+    if (halo->log_mass <= goal)
       return true;
-    if (!ew_tree_memory_add_node(memory, exp(next), ew_table_at(&t->redshift, halo->clock)))
+    if (!ew_tree_memory_add_node(memory, exp(halo->log_mass), halo->redshift))
       return false;
   }
 }
 
 /* ln of the mass at which the branch next splits, or the resolution if it never does. */
 static double draw_split_mass(const ew_split_tables *t, const walker *halo, ew_stream *stream) {
-  double left = ew_table_at(&t->hazard, halo->log_mass) - ew_draw_exponential(stream);
+  double expected = ew_table_at(&t->hazard, halo->log_mass);
+  double left = expected > 0.0 ? expected - ew_draw_exponential(stream) : 0.0;
   if (!(left > 0.0))
     return t->log_resolution;
-  return fmin(ew_table_at(&t->mass_of_hazard, log1p(left)), halo->log_mass);
+  return fmax(ew_log_mass_at(&t->hazard, halo->log_mass, left), t->log_resolution + log(2.0));
 }
 
 /* ln q of the smaller part, by rejection under a power law of the table. */
@@ -134,38 +145,39 @@ static double draw_log_share(const ew_split_tables *t, double log_mass, ew_strea
 
 /* Lays the two nodes of a merger, sends the smaller part to the stack, and goes on with the larger. */
 static bool split(const ew_split_tables *t, walker *halo, uint64_t ordinal, ew_stream *stream, ew_tree_memory *memory) {
-  double mass = exp(halo->log_mass), redshift = ew_table_at(&t->redshift, halo->clock);
-  double smaller = fmax(mass * exp(draw_log_share(t, halo->log_mass, stream)), t->parameters.resolution_mass);
-  double larger = mass - smaller;
+  double mass = exp(halo->log_mass), resolution = t->parameters.resolution_mass;
+  double smaller = fmax(mass * exp(draw_log_share(t, halo->log_mass, stream)), resolution);
+  double larger = fmax(mass - smaller, resolution);
   halo->log_mass = log(larger);
-  return ew_tree_memory_add_node(memory, mass, redshift) &&
-         ew_tree_memory_push(memory, smaller, halo->clock, redshift, ordinal) &&
-         ew_tree_memory_add_node(memory, larger, redshift);
+  halo->drift = ew_table_at(&t->drift, halo->log_mass);
+  return ew_tree_memory_add_node(memory, mass, halo->redshift) &&
+         ew_tree_memory_push(memory, smaller, halo->clock, halo->redshift, ordinal) &&
+         ew_tree_memory_add_node(memory, larger, halo->redshift);
 }
 
-/* Where the walk must stop at the latest: the resolution, or the mass at the highest redshift followed. */
-static double last_mass(const ew_split_tables *t, const walker *halo) {
-  double left = ew_table_at(&t->drift, halo->log_mass) - (t->highest_clock - halo->clock);
-  return left > 0.0 ? ew_table_at(&t->mass_of_drift, left) : t->log_resolution;
+static bool end_at_resolution(const ew_split_tables *t, walker *halo, ew_tree_memory *memory) {
+  return drift_to(t, halo, t->log_resolution, memory) &&
+         ew_tree_memory_add_node(memory, t->parameters.resolution_mass, halo->redshift);
 }
 
-static bool end_branch(const ew_split_tables *t, walker *halo, double goal, ew_tree_memory *memory) {
-  if (!drift_to(t, halo, goal, memory))
-    return false;
-  bool resolved = goal <= t->log_resolution;
-  double mass = resolved ? t->parameters.resolution_mass : exp(goal);
-  return ew_tree_memory_add_node(memory, mass, ew_table_at(&t->redshift, halo->clock));
+static bool end_at_highest_redshift(const ew_split_tables *t, walker *halo, ew_tree_memory *memory) {
+  double left = halo->drift - (t->highest_clock - halo->clock);
+  double goal = ew_log_mass_at(&t->drift, halo->log_mass, left);
+  return drift_to(t, halo, goal, memory) && ew_tree_memory_add_node(memory, exp(goal), t->parameters.highest_redshift);
 }
 
-static bool walk_branch(const ew_split_tables *t, walker halo, const ew_draws *draws, ew_tree_memory *memory) {
-  uint64_t key = ew_tree_memory_branch_key(memory);
+static bool walk_branch(const ew_split_tables *t, const ew_walk *walk, const ew_draws *draws, ew_tree_memory *memory) {
+  double log_mass = log(walk->mass);
+  walker halo = {log_mass, ew_table_at(&t->drift, log_mass), walk->clock, walk->redshift};
   if (halo.log_mass <= t->log_resolution || halo.clock >= t->highest_clock)
     return true;
   for (uint64_t ordinal = 0;; ordinal++) {
-    ew_stream stream = ew_stream_open(draws, EW_PROCESS_ASSEMBLY, key, ordinal);
-    double goal = draw_split_mass(t, &halo, &stream), last = last_mass(t, &halo);
-    if (goal <= last)
-      return end_branch(t, &halo, last, memory);
+    ew_stream stream = ew_stream_open(draws, EW_PROCESS_ASSEMBLY, walk->key, ordinal);
+    double goal = draw_split_mass(t, &halo, &stream);
+    if (drifted(t, &halo, goal).clock >= t->highest_clock)
+      return end_at_highest_redshift(t, &halo, memory);
+    if (goal <= t->log_resolution)
+      return end_at_resolution(t, &halo, memory);
     if (!drift_to(t, &halo, goal, memory) || !split(t, &halo, ordinal, &stream, memory))
       return false;
   }
@@ -192,8 +204,7 @@ ew_status ew_tree_grow(const ew_tree_builder *builder, const ew_root *root, cons
   bool room = ew_tree_memory_start(memory, root->mass, clock, root->redshift);
   ew_walk walk;
   while (room && ew_tree_memory_pop(memory, &walk))
-    room = ew_tree_memory_open_branch(memory, &walk) &&
-           walk_branch(t, (walker){log(walk.mass), walk.clock}, draws, memory);
+    room = ew_tree_memory_open_branch(memory, &walk) && walk_branch(t, &walk, draws, memory);
   if (!room)
     return ew_fail_memory(error, "a merger tree");
   ew_tree_memory_finish(memory, root, tree);

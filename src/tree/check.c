@@ -11,10 +11,17 @@ static ew_status fault(ew_error *error, const ew_tree *tree, size_t branch, cons
   return ew_fail(error, EW_REFUSED, "tree %llu, branch %zu: %s", (unsigned long long)tree->number, branch, what);
 }
 
+/* Where the nodes of the branch before end. */
+static size_t nodes_before(const ew_tree *tree, size_t index) {
+  return index > 0 ? tree->branch[index - 1].first_node + (size_t)tree->branch[index - 1].node_count : 0;
+}
+
 static ew_status check_nodes(const ew_tree *tree, size_t index, ew_error *error) {
   const ew_branch *branch = &tree->branch[index];
   if (branch->node_count == 0 || branch->first_node + (size_t)branch->node_count > tree->node_count)
     return fault(error, tree, index, "its nodes are outside the tree's");
+  if (branch->first_node != nodes_before(tree, index))
+    return fault(error, tree, index, "its nodes do not follow upon those of the branch before");
   for (size_t i = branch->first_node; i < branch->first_node + branch->node_count; i++) {
     if (!(tree->mass[i] > 0.0 && isfinite(tree->mass[i])))
       return fault(error, tree, index, "a node's mass is not positive");
@@ -46,15 +53,29 @@ static ew_status check_join(const ew_tree *tree, size_t index, ew_error *error) 
   return EW_OK;
 }
 
+/* A branch follows directly upon all that joins it, so between a branch and the one that it joins stand only branches
+ * that lead to the latter: the next branch is that one, or comes to it by joining. */
+static ew_status check_order(const ew_tree *tree, size_t index, ew_error *error) {
+  int32_t joined = tree->branch[index].joins_branch, next = (int32_t)index + 1;
+  while (next < joined && tree->branch[next].joins_branch >= 0)
+    next = tree->branch[next].joins_branch;
+  if (joined >= 0 && next != joined)
+    return fault(error, tree, index, "between it and the branch that it joins stand branches that lead elsewhere");
+  return EW_OK;
+}
+
+/* Each rule relies on those before it for the whole tree. */
 ew_status ew_tree_check(const ew_tree *tree, ew_error *error) {
+  ew_status (*const rules[])(const ew_tree *, size_t, ew_error *) = {check_nodes, check_join, check_order};
   if (tree->branch_count == 0)
     return ew_fail(error, EW_REFUSED, "tree %llu has no branch", (unsigned long long)tree->number);
-  for (size_t i = 0; i < tree->branch_count; i++) {
-    ew_status status = check_nodes(tree, i, error);
-    if (status == EW_OK)
-      status = check_join(tree, i, error);
-    if (status != EW_OK)
-      return status;
-  }
+  for (size_t r = 0; r < sizeof rules / sizeof *rules; r++)
+    for (size_t i = 0; i < tree->branch_count; i++) {
+      ew_status status = rules[r](tree, i, error);
+      if (status != EW_OK)
+        return status;
+    }
+  if (nodes_before(tree, tree->branch_count) != tree->node_count)
+    return fault(error, tree, tree->branch_count - 1, "the tree has nodes of no branch");
   return EW_OK;
 }

@@ -3,6 +3,8 @@
  * Reading a branch: its mass at a redshift, when it had formed. */
 #include "elfinwood/tree.h"
 
+#include <math.h>
+
 /* Straight line through two nodes; the later one where they share a redshift. */
 static double mass_between(const ew_tree *tree, size_t earlier, double redshift) {
   double z0 = tree->redshift[earlier], z1 = tree->redshift[earlier + 1];
@@ -36,6 +38,6 @@ double ew_formation_redshift(const ew_tree *tree, const ew_branch *branch, doubl
   if (node == first)
     return tree->redshift[first];
   double m0 = tree->mass[node - 1], m1 = tree->mass[node];
-  double part = m1 > m0 ? (wanted - m0) / (m1 - m0) : 1.0;
+  double part = m1 > m0 ? fmin((wanted - m0) / (m1 - m0), 1.0) : 1.0;
   return tree->redshift[node - 1] + part * (tree->redshift[node] - tree->redshift[node - 1]);
 }

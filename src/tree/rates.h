@@ -10,19 +10,20 @@
 
 #include "elfinwood/tree.h"
 
+#include <gsl/gsl_integration.h>
+
 typedef struct {
   ew_tree_parameters parameters;
-  double log_resolution, log_largest; /* ln Msun */
-  double latest_clock, highest_clock; /* at z = 0 and at highest_redshift */
-  ew_table variance;                  /* S = sigma^2, by ln M */
-  ew_table log_weight;                /* ln[alpha sigma^(2 + gamma1)], by ln M */
-  ew_table drift;                     /* T, by ln M */
-  ew_table hazard;                    /* H, by ln M */
-  ew_table mass_of_drift;             /* ln M, by T */
-  ew_table mass_of_hazard;            /* ln M, by ln(1 + H) */
-  ew_table envelope_slope;            /* e, by ln M: the density of q stays below envelope q^e */
-  ew_table log_envelope;              /* ln envelope, by ln M */
-  ew_table redshift;                  /* by clock */
+  double log_resolution;               /* ln Msun, where the tables by ln M begin */
+  double highest_clock;                /* at highest_redshift */
+  ew_table variance;                   /* S = sigma^2, by ln M */
+  ew_table log_weight;                 /* ln[alpha sigma^(2 + gamma1)], by ln M */
+  ew_table drift;                      /* T, by ln M */
+  ew_table hazard;                     /* H, by ln M */
+  ew_table envelope_slope;             /* e, by ln M: the density of q stays below envelope q^e */
+  ew_table log_envelope;               /* ln envelope, by ln M */
+  ew_table redshift;                   /* by clock, from 0 to EW_HIGHEST_REDSHIFT */
+  gsl_integration_glfixed_table *rule; /* of the integrals over shares */
 } ew_split_tables;
 
 EW_CHECKED ew_status ew_split_tables_make(ew_split_tables *tables, const ew_spectrum *spectrum,
@@ -35,6 +36,11 @@ double ew_log_split_density(const ew_split_tables *tables, double log_mass, doub
 /* N and F per unit of clock. */
 double ew_split_rate_on_clock(const ew_split_tables *tables, double log_mass);
 double ew_smooth_rate_on_clock(const ew_split_tables *tables, double log_mass);
+
+/* ln M at which a table that rises with ln M has the value `wanted`, sought from `from` down and never above it. It is
+ * the exact inverse of ew_table_at: a table of the inverse would be wrong by several waiting times in massive haloes.
+ */
+double ew_log_mass_at(const ew_table *rising, double from, double wanted);
 
 double ew_clock_of_barrier(const ew_split_tables *tables, double barrier);
 double ew_barrier_of_clock(const ew_split_tables *tables, double clock);

@@ -74,9 +74,11 @@ typedef struct {
 
 static int open_table(void **state) {
   fixture *f = calloc(1, sizeof *f);
+  if (!f)
+    return 1;
   *state = f;
   strcpy(f->folder, "/tmp/elfinwood-XXXXXX");
-  return !f || !mkdtemp(f->folder) || ew_parameters_open(&f->values, &table, &f->target, &f->error) != EW_OK;
+  return !mkdtemp(f->folder) || ew_parameters_open(&f->values, &table, &f->target, &f->error) != EW_OK;
 }
 
 static int close_table(void **state) {
@@ -117,7 +119,7 @@ static void accept_assignment(fixture *f, const char *assignment) {
   assert_int_equal(status, EW_OK);
 }
 
-/* ------------------------------------------------------------------------------------------------ what is accepted */
+/* ---------------------------------------------------------------------------------------------- what is accepted */
 
 static void test_rows_are_counted_through_all_groups(void **state) {
   (void)state;
@@ -197,7 +199,7 @@ static void test_later_reads_win(void **state) {
   assert_string_equal(origin(f, "roots.count"), "f.cfg:2");
 }
 
-/* ------------------------------------------------------------------------------------------------- what is refused */
+/* ----------------------------------------------------------------------------------------------- what is refused */
 
 typedef struct {
   const char *given, *message;
@@ -229,6 +231,8 @@ static const refusal in_files[] = {
                                 "\"group : { key = value; };\"" HUBBLE},
     {"cosmology : {\n hubble : { value = 0.7; };\n};",
      "f.cfg:2: cosmology.hubble = {: wrong type, this is a group" HUBBLE},
+    {"cosmology : {\n\n mass = 7;\n};", /* a right key in a wrong group is nearer than a wrong key in a right one */
+     "f.cfg:3: cosmology.mass = 7: no parameter of that name; did you mean roots.mass?"},
     /* twice */
     {"cosmology : {\n hubble = 0.7;\n # again\n hubble = 0.8;\n};",
      "f.cfg:4: cosmology.hubble = 0.8: set twice, first at f.cfg:2" HUBBLE},
@@ -303,6 +307,7 @@ static const refusal in_files[] = {
     {"roots : { count = 2; };\n}\n", "f.cfg:2: syntax error in \"}\""},
     {"roots : { count = 2; }; /* never\nending\n",
      "f.cfg:1: comment is never closed: \"roots : { count = 2; }; /* never\""},
+    {"roots : {\n count = 2; /* never };", "f.cfg:2: comment is never closed: \"count = 2; /* never };\""},
     {"roots : { count = 2; };\n@include roots.cfg\n", "f.cfg:2: syntax error in \"@include roots.cfg\""},
     {"roots : { count = 2; };\n  @include \"roots.cfg\"\n",
      "f.cfg:2: @include \"roots.cfg\": only a file can include another"}};
@@ -479,7 +484,7 @@ static void test_damaged_text_does_no_harm(void **state) {
   assert_non_null(memchr(f->target.second.file, '\0', EW_TEXT_SIZE));
 }
 
-/* ----------------------------------------------------------------------------------------------------------- files */
+/* --------------------------------------------------------------------------------------------------------- files */
 
 static void expect_refusal(fixture *f, const char *path, const char *message) {
   f->error = (ew_error){0};
@@ -566,8 +571,7 @@ static void test_includes_are_spliced_in(void **state) {
   rmdir(folder);
 }
 
-/* ---------------------------------------------------------------------------------------------------- what is written
- */
+/* ----------------------------------------------------------------------------------------------- what is written */
 
 static void expect_same_after_echo(const fixture *f) {
   char *text = ew_parameters_echo(&f->values);
@@ -663,11 +667,11 @@ static void test_echo_keeps_random_numbers(void **state) {
 
 enum { PRINT_SIZE = 16384 };
 
-static void print_into(char text[PRINT_SIZE]) {
+static void print_into(char text[PRINT_SIZE], const ew_parameter_table *printed) {
   memset(text, 0, PRINT_SIZE);
   FILE *out = fmemopen(text, PRINT_SIZE - 1, "w");
   assert_non_null(out);
-  ew_parameters_print(&table, out);
+  ew_parameters_print(printed, out);
   assert_int_equal(fclose(out), 0);
 }
 
@@ -676,10 +680,17 @@ static void expect_within(const char *text, const char *wanted) {
     fail_msg("\"%s\" is not in the print", wanted);
 }
 
+static size_t times_within(const char *text, const char *wanted) {
+  size_t times = 0;
+  for (const char *at = strstr(text, wanted); at; at = strstr(at + 1, wanted))
+    times++;
+  return times;
+}
+
 static void test_print_tells_every_row(void **state) {
   (void)state;
   char text[PRINT_SIZE];
-  print_into(text);
+  print_into(text, &table);
   for (size_t i = 0; i < ew_parameters_count(&table); i++) {
     const ew_parameter *row = ew_parameters_row(&table, i);
     expect_within(text, row->name);
@@ -689,6 +700,8 @@ static void test_print_tells_every_row(void **state) {
     expect_within(described, row->meaning);
     expect_within(described, row->source);
   }
+  assert_int_equal(times_within(text, "default"), 4); /* one heading for each prefix */
+  assert_int_equal(times_within(text, "The tree file."), 1);
   for (const ew_choice *choice = kinds; choice->name; choice++) {
     expect_within(text, choice->name);
     expect_within(text, choice->meaning);
@@ -697,12 +710,25 @@ static void test_print_tells_every_row(void **state) {
   expect_within(text, "[low, high] from 1e6 to 1e16 Msun\n");
 }
 
+static void expect_page_width(const char *text) {
+  for (const char *line = text; *line; line += strcspn(line, "\n") + 1)
+    assert_in_range(strcspn(line, "\n"), 0, 110);
+}
+
 static void test_print_fits_the_page(void **state) {
   (void)state;
-  char text[PRINT_SIZE];
-  print_into(text);
-  for (const char *line = text; *line; line += strcspn(line, "\n") + 1)
-    assert_in_range(strcspn(line, "\n"), 0, 120);
+  char text[PRINT_SIZE], meaning[600] = "";
+  print_into(text, &table);
+  expect_page_width(text);
+  while (strlen(meaning) < 500)
+    strcat(meaning, "seven and twenty words, ");
+  const ew_choice long_choices[] = {{"wordy", meaning, "own choice"}, {NULL, NULL, NULL}};
+  const ew_parameter rows[] = {{"a.b", EW_CHOICE, 0, "", "\"wordy\"", 0, 0, long_choices, meaning, "own choice"},
+                               {.name = NULL}};
+  const ew_parameter_group group = {rows, 0};
+  print_into(text, &(const ew_parameter_table){&group, 1});
+  expect_page_width(text);
+  assert_int_equal(times_within(text, "twenty"), 2 * times_within(meaning, "twenty"));
 }
 
 static void test_checks_between_parameters_are_told_alike(void **state) {
@@ -716,7 +742,31 @@ static void test_checks_between_parameters_are_told_alike(void **state) {
   assert_string_equal(f->error.message, "default: roots.count = 10: why");
 }
 
-/* ------------------------------------------------------------------------------------------------------- bad tables */
+/* ---------------------------------------------------------------------------------------- structs without engine */
+
+static void expect_struct_refusal(const second_part *parameters, const char *message) {
+  ew_error error = {0};
+  assert_int_equal(ew_rows_check(second_rows, parameters, &error), EW_REFUSED);
+  assert_string_equal(error.message, message);
+}
+
+static void test_a_struct_is_checked_against_its_rows(void **state) {
+  fixture *f = *state;
+  assert_int_equal(ew_rows_count(first_rows), 2);
+  assert_int_equal(ew_rows_count(second_rows), 6);
+  second_part *parameters = &f->target.second;
+  assert_int_equal(ew_rows_check(second_rows, parameters, &f->error), EW_OK);
+  parameters->mass = -1.0;
+  expect_struct_refusal(parameters, "roots.mass = -1 is outside 0 to inf");
+  parameters->mass = (double)NAN;
+  expect_struct_refusal(parameters, "roots.mass = nan is outside 0 to inf");
+  parameters->kind = 3;
+  expect_struct_refusal(parameters, "roots.kind = 3 is none of its 3 choices");
+  parameters->kind = -1;
+  expect_struct_refusal(parameters, "roots.kind = -1 is none of its 3 choices");
+}
+
+/* ---------------------------------------------------------------------------------------------------- bad tables */
 
 static void expect_bad_row(ew_parameter row, const char *message) {
   const ew_parameter rows[] = {first_rows[0], row, {.name = NULL}};
@@ -784,6 +834,7 @@ int main(void) {
                                      cmocka_unit_test(test_print_tells_every_row),
                                      cmocka_unit_test(test_print_fits_the_page),
                                      ON_TABLE(test_checks_between_parameters_are_told_alike),
+                                     ON_TABLE(test_a_struct_is_checked_against_its_rows),
                                      cmocka_unit_test(test_a_bad_row_is_named),
                                      cmocka_unit_test(test_an_empty_table_knows_no_name)};
   return cmocka_run_group_tests(tests, NULL, NULL);

@@ -34,8 +34,7 @@ static ew_stream stream_with(uint64_t word) {
   return (ew_stream){.word = {word}, .used = 0};
 }
 
-/* --------------------------------------------------------------------------------------------------------- generator
- */
+/* ----------------------------------------------------------------------------------------------------- generator */
 
 /* Lines "philox4x64 10" of Random123's kat_vectors (from memory; the library's own code gives the same). */
 static const struct {
@@ -100,8 +99,7 @@ static void test_processes_have_names_of_their_own(void **state) {
   assert_string_equal(ew_process_name(EW_PROCESS_COUNT), "unknown");
 }
 
-/* -------------------------------------------------------------------------------------------------- one word, one draw
- */
+/* -------------------------------------------------------------------------------------------- one word, one draw */
 
 static void test_uniform_never_reaches_its_ends(void **state) {
   (void)state;
@@ -136,8 +134,7 @@ static void test_each_draw_takes_one_word(void **state) {
   }
 }
 
-/* ------------------------------------------------------------------------------------------------------ distributions
- */
+/* ------------------------------------------------------------------------------------------------- distributions */
 
 enum { DRAWS = 200000 };
 
@@ -313,6 +310,27 @@ static const struct {
     {10000000.0, 0xa5a5a5a5a5a5a5a5, 10001193},
     {10000000.0, 0xfff0123456789abc, 10011033},
     {10000000.0, 0xfffffffffff12345, 10023517},
+    /* so near to a step: 1e-6 counts where the sum is exact, then 0.002 and 0.0005 */
+    {599.0, 0x00484bd091867abc, 525},
+    {599.0, 0x00484bd1d599fabc, 526},
+    {599.0, 0xf9a34a73e101aabc, 647},
+    {599.0, 0xf9a34a888fd45abc, 648},
+    {601.0, 0x0049929682898abc, 527},
+    {601.0, 0x00499c9fd258eabc, 528},
+    {601.0, 0x05478fb18bd22abc, 551},
+    {601.0, 0x054815dadb504abc, 552},
+    {601.0, 0xfa29636394877abc, 650},
+    {601.0, 0xfa29f978e3aa8abc, 651},
+    {601.0, 0xff96b1773abdfabc, 674},
+    {601.0, 0xff96bff7bc9d4abc, 675},
+    {10001.0, 0x00534339916baabc, 9700},
+    {10001.0, 0x005343ecbcbfbabc, 9701},
+    {10001.0, 0x05aff65a5bcc6abc, 9800},
+    {10001.0, 0x05afff3390be9abc, 9801},
+    {10001.0, 0xfa2cbc861c9e0abc, 10201},
+    {10001.0, 0xfa2cc59cff750abc, 10202},
+    {10001.0, 0xffa513107e95fabc, 10301},
+    {10001.0, 0xffa513d4a05f9abc, 10302},
 };
 
 static void test_poisson_inverts_its_distribution(void **state) {
@@ -365,8 +383,7 @@ static void test_poisson_stays_sane_at_its_ends(void **state) {
   assert_true(ew_draw_poisson(&stream, 1e300) == UINT64_MAX);
 }
 
-/* ------------------------------------------------------------------------------------------------------ independence
- */
+/* -------------------------------------------------------------------------------------------------- independence */
 
 enum { COMPARED = 20000 };
 
@@ -452,6 +469,18 @@ static void test_branch_keys_are_all_different(void **state) {
   free(key);
 }
 
+/* Parents and ordinals that differ in the same few bits must not make up for each other. */
+static void test_branch_keys_of_neighbours_are_all_different(void **state) {
+  (void)state;
+  enum { SIDE = 1000 };
+  uint64_t *key = malloc(SIDE * SIDE * sizeof *key);
+  assert_non_null(key);
+  for (size_t i = 0; i < SIDE * SIDE; i++)
+    key[i] = ew_branch_key_child(i / SIDE, i % SIDE);
+  expect_no_repeat(key, SIDE * SIDE);
+  free(key);
+}
+
 /* Neighbouring ordinals and identifiers differ in half of the bits of their keys. */
 static void test_branch_keys_are_scattered(void **state) {
   (void)state;
@@ -493,6 +522,7 @@ int main(void) {
                                      cmocka_unit_test(test_another_process_can_be_redrawn_alone),
                                      cmocka_unit_test(test_slots_do_not_overlap),
                                      cmocka_unit_test(test_branch_keys_are_all_different),
+                                     cmocka_unit_test(test_branch_keys_of_neighbours_are_all_different),
                                      cmocka_unit_test(test_branch_keys_are_scattered),
                                      cmocka_unit_test(test_order_of_splits_matters)};
   return cmocka_run_group_tests(tests, NULL, NULL);

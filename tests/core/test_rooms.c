@@ -76,8 +76,7 @@ static void visit_tree(const char *path, visitor *visit, counts *tally) {
   closedir(folder);
 }
 
-/* -------------------------------------------------------------------------------------------------------- include rule
- */
+/* -------------------------------------------------------------------------------------------------- include rule */
 
 static const char *may_use(const char *room) {
   for (size_t i = 0; i < sizeof rooms / sizeof *rooms; i++)
@@ -159,8 +158,7 @@ static void test_the_rule_itself(void **state) {
   assert_string_equal(room, "tree");
 }
 
-/* ------------------------------------------------------------------------------------------------------------ manners
- */
+/* ------------------------------------------------------------------------------------------------------- manners */
 
 static void check_manners(const char *path, FILE *file, counts *tally) {
   static const char licence[] = "/* SPDX-License-Identifier: GPL-3.0-or-later";
