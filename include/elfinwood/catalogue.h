@@ -7,8 +7,7 @@
 
 #include "elfinwood/population.h"
 
-/* ------------------------------------------------------------------------------------------------------------- columns
- */
+/* ---------------------------------------------------------------------------------------------------------- columns */
 
 typedef enum { EW_COLUMN_REAL, EW_COLUMN_INTEGER, EW_COLUMN_KEY } ew_column_type; /* double, int64_t, uint64_t */
 
@@ -47,8 +46,7 @@ void ew_catalogue_close(ew_catalogue *catalogue); /* accepts NULL */
 /* Brings to the disk what it can; the number of whole trees that the file holds. */
 uint64_t ew_catalogue_kept(ew_catalogue *catalogue);
 
-/* --------------------------------------------------------------------------------------------------- spectrum file
- */
+/* ---------------------------------------------------------------------------------------------------- spectrum file */
 
 /* Writes /background, /power, /variance and /mass_function as PATH.partial, then renames. */
 EW_CHECKED ew_status ew_spectrum_write(const ew_spectrum *spectrum, const char *path, const char *parameter_text,

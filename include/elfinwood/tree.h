@@ -111,8 +111,9 @@ EW_CHECKED ew_status ew_tree_file_create(ew_tree_file **file, const char *path, 
                                          ew_error *error);
 EW_CHECKED ew_status ew_tree_file_append(ew_tree_file *file, const ew_tree *tree, ew_error *error);
 EW_CHECKED ew_status ew_tree_file_finish(ew_tree_file *file, ew_error *error);
-uint64_t
-ew_tree_file_kept(ew_tree_file *file);       /* brings to the disk what it can; whole trees that PATH.partial holds */
 void ew_tree_file_close(ew_tree_file *file); /* accepts NULL */
+
+/* Brings to the disk what it can; the number of whole trees that the file holds. */
+uint64_t ew_tree_file_kept(ew_tree_file *file);
 
 #endif

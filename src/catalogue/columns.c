@@ -22,7 +22,7 @@ const ew_column ew_galaxy_columns[] = {
     REAL("weight", weight, "1", "statistical weight of the tree"),
     REAL("halo_mass", halo_mass, "Msun", "virial mass of the halo (of a member: at infall)"),
     REAL("peak_halo_mass", peak_halo_mass, "Msun", "largest virial mass that the halo ever had"),
-    REAL("stellar_mass", observed.stellar_mass, "Msun", "mass in living stars and remnants"),
+    REAL("stellar_mass", observed.stellar_mass, "Msun", "mass in living stars and remnants; 0 where no star is alive"),
     REAL("stellar_mass_formed", observed.stellar_mass_formed, "Msun", "mass ever formed into stars"),
     REAL("gas_mass", observed.gas_mass, "Msun", "gas in the galaxy"),
     REAL("luminosity_v", observed.luminosity_v, "Lsun,V", "V-band luminosity; 0: no stars"),

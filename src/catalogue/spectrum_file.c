@@ -34,8 +34,7 @@ static double mass_of(size_t i) {
   return pow(10.0, LOWEST_LOG_MASS + (double)i / PER_DECADE);
 }
 
-/* -------------------------------------------------------------------------------------------------- plain columns
- */
+/* ---------------------------------------------------------------------------------------------------- plain columns */
 
 static double redshift(const ew_spectrum *spectrum, size_t i) {
   (void)spectrum;
@@ -131,8 +130,7 @@ static ew_status write_plain(ew_hdf_file *file, const ew_spectrum *spectrum, ew_
   return status;
 }
 
-/* --------------------------------------------------------------------------------------------------- mass functions
- */
+/* --------------------------------------------------------------------------------------------------- mass functions */
 
 static ew_status write_mass_function(ew_hdf_file *file, const char *name, const ew_mass_function *function,
                                      const ew_spectrum *spectrum, ew_error *error) {

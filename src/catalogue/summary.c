@@ -74,8 +74,7 @@ void ew_summary_free(ew_summary *summary) {
   free(summary);
 }
 
-/* -------------------------------------------------------------------------------------------------------- collecting
- */
+/* ------------------------------------------------------------------------------------------------------- collecting */
 
 /* floor(x) among bins 0..count - 1; what lies outside goes to the nearest. */
 static size_t bin_of(double x, size_t count) {
@@ -112,8 +111,7 @@ void ew_summary_add(ew_summary *summary, const ew_galaxy_row *rows, size_t count
       count_row(summary, &rows[i]);
 }
 
-/* ---------------------------------------------------------------------------------------------------------- printing
- */
+/* --------------------------------------------------------------------------------------------------------- printing */
 
 enum { LABEL_SIZE = 32, CELL_SIZE = 64, LABEL_WIDTH = 12, NUMBER_WIDTH = 8 };
 

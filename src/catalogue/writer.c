@@ -14,8 +14,7 @@ struct ew_catalogue {
   ew_hdf_column **trees;    /* [ew_tree_column_count] */
 };
 
-/* ------------------------------------------------------------------------------------------------------------ create
- */
+/* ----------------------------------------------------------------------------------------------------------- create */
 
 static ew_hdf_type hdf_type_of(ew_column_type type) {
   return type == EW_COLUMN_REAL ? EW_HDF_REAL : type == EW_COLUMN_INTEGER ? EW_HDF_INTEGER : EW_HDF_KEY;
@@ -71,8 +70,7 @@ ew_status ew_catalogue_create(ew_catalogue **catalogue, const char *path, const 
   return EW_OK;
 }
 
-/* -------------------------------------------------------------------------------------------------------------- rows
- */
+/* ------------------------------------------------------------------------------------------------------------- rows */
 
 static ew_status push_row(ew_hdf_column *const *made, const ew_column *columns, size_t count, const void *row,
                           ew_error *error) {
@@ -95,8 +93,7 @@ ew_row_sink ew_catalogue_sink(ew_catalogue *catalogue) {
   return (ew_row_sink){take, catalogue};
 }
 
-/* ------------------------------------------------------------------------------------------------------------- close
- */
+/* ------------------------------------------------------------------------------------------------------------ close */
 
 uint64_t ew_catalogue_kept(ew_catalogue *catalogue) {
   return ew_hdf_kept_rows(catalogue->trees[0]);

@@ -39,8 +39,7 @@ const char *ew_nearest_name(const char *given, const char *const *names, size_t 
   return nearest;
 }
 
-/* -------------------------------------------------------------------------------------------------------------- read
- */
+/* ------------------------------------------------------------------------------------------------------------- read */
 
 /* The words that are left. */
 typedef struct {
@@ -178,8 +177,7 @@ void ew_options_clear(ew_options *options) {
   *options = (ew_options){0};
 }
 
-/* -------------------------------------------------------------------------------------------------------------- help
- */
+/* ------------------------------------------------------------------------------------------------------------- help */
 
 void ew_command_print_help(const ew_command *command, FILE *out) {
   fprintf(out, "elfinwood %s%s [options]\n\n%s\n\nOptions:\n", command->name, command->takes_file ? " PARAMS" : "",

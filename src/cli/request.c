@@ -10,8 +10,7 @@
 #include <string.h>
 #include <sys/stat.h>
 
-/* -------------------------------------------------------------------------------------------------------- parameters
- */
+/* ------------------------------------------------------------------------------------------------------- parameters */
 
 static ew_status assign_seed(ew_request *request, const char *seed, ew_error *error) {
   static const char key[] = "random.seed=";
@@ -42,8 +41,7 @@ static ew_status read_parameters(ew_request *request, const ew_options *options,
   return request->parameter_text ? EW_OK : ew_fail_memory(error, "the parameters");
 }
 
-/* ------------------------------------------------------------------------------------------------------------ output
- */
+/* ----------------------------------------------------------------------------------------------------------- output */
 
 /* NAME.h5 for FOLDER/NAME.cfg; NULL when memory is short. */
 static char *name_after(const char *file, const char *ending) {
@@ -90,8 +88,7 @@ static ew_status name_output(ew_request *request, const ew_options *options, con
   return status == EW_OK ? ew_output_probe(request->output, error) : status;
 }
 
-/* ----------------------------------------------------------------------------------------------------------- request
- */
+/* ---------------------------------------------------------------------------------------------------------- request */
 
 ew_status ew_request_open(ew_request *request, const ew_options *options, const char *ending, ew_error *error) {
   *request = (ew_request){0};

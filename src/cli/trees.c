@@ -32,8 +32,7 @@ typedef struct {
 
 static const ew_distribution_range formation_range = {0.0, EW_HIGHEST_REDSHIFT};
 
-/* -------------------------------------------------------------------------------------------------------------- grow
- */
+/* ------------------------------------------------------------------------------------------------------------- grow */
 
 static void grow(const ew_laboratory *laboratory, uint64_t number, seat *at) {
   const ew_draws draws = {.seed = (uint64_t)laboratory->settings.random.seed, .tree = number};
@@ -79,8 +78,7 @@ static ew_status grow_all(nursery *trees, ew_error *error) {
   return status;
 }
 
-/* ----------------------------------------------------------------------------------------------------------- nursery
- */
+/* ---------------------------------------------------------------------------------------------------------- nursery */
 
 static void close_nursery(nursery *trees) {
   if (!trees)
@@ -108,8 +106,7 @@ static nursery *open_nursery(const ew_laboratory *laboratory, int threads) {
   return NULL;
 }
 
-/* --------------------------------------------------------------------------------------------------------------- act
- */
+/* -------------------------------------------------------------------------------------------------------------- act */
 
 static ew_status write_trees(nursery *trees, const ew_request *request, bool progress, ew_error *error) {
   const ew_settings *settings = &request->settings;

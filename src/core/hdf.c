@@ -46,9 +46,9 @@ struct ew_hdf_file {
   char fault[256]; /* of the HDF5 call that failed */
 };
 
-/* ---------------------------------------------------------------------------------------------------------- failures
- * HDF5 is kept from printing while one of our calls runs; its own setting is put back afterwards. */
+/* --------------------------------------------------------------------------------------------------------- failures */
 
+/* HDF5 is kept from printing while one of our calls runs; its own setting is put back afterwards. */
 typedef struct {
   H5E_auto2_t report;
   void *context;
@@ -89,8 +89,7 @@ static ew_status fail(ew_hdf_file *file, ew_error *error) {
   return ew_output_fail(file->output.partial, reason, error);
 }
 
-/* -------------------------------------------------------------------------------------------------------------- room
- */
+/* ------------------------------------------------------------------------------------------------------------- room */
 
 static int descriptor_of(ew_hdf_file *file) {
   void *descriptor = NULL;
@@ -136,8 +135,7 @@ static bool take_room(ew_hdf_file *file, uint64_t bytes) {
   return false;
 }
 
-/* -------------------------------------------------------------------------------------------------------- attributes
- */
+/* ------------------------------------------------------------------------------------------------------- attributes */
 
 typedef struct {
   const char *name;
@@ -209,8 +207,7 @@ static bool put_complete(ew_hdf_file *file, int64_t complete) {
   return put(file, file->handle, &(attribute){"complete", H5T_STD_I64LE, H5T_NATIVE_INT64, &complete});
 }
 
-/* ------------------------------------------------------------------------------------------------------------ create
- */
+/* ----------------------------------------------------------------------------------------------------------- create */
 
 void ew_hdf_start(void) {
   H5dont_atexit();
@@ -253,8 +250,7 @@ ew_status ew_hdf_create(ew_hdf_file **file, const char *path, ew_error *error) {
   return EW_OK;
 }
 
-/* ----------------------------------------------------------------------------------------------------------- columns
- */
+/* ---------------------------------------------------------------------------------------------------------- columns */
 
 static hid_t file_type_of(ew_hdf_type type) {
   return type == EW_HDF_REAL ? H5T_IEEE_F64LE : type == EW_HDF_INTEGER ? H5T_STD_I64LE : H5T_STD_U64LE;
@@ -342,8 +338,7 @@ ew_status ew_hdf_push(ew_hdf_column *column, const void *values, size_t rows, ew
   return EW_OK;
 }
 
-/* ------------------------------------------------------------------------------------------------------------ commit
- */
+/* ----------------------------------------------------------------------------------------------------------- commit */
 
 /* No less than what the sealed rows can take: whole chunks, and HDF5's B-tree nodes of 2 kB for up to 64 of them. */
 static uint64_t room_for(const ew_hdf_column *column) {
@@ -451,8 +446,7 @@ ew_status ew_hdf_begin(ew_hdf_file *file, ew_error *error) {
   return file->begun ? EW_OK : fail(file, error);
 }
 
-/* ------------------------------------------------------------------------------------------------------------- close
- */
+/* ------------------------------------------------------------------------------------------------------------ close */
 
 static bool close_handle(ew_hdf_file *file) {
   hid_t handle = file->handle;

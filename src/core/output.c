@@ -26,8 +26,7 @@ ew_status ew_output_fail(const char *path, const char *reason, ew_error *error) 
   return ew_fail(error, EW_FAILED, "cannot write %s%s: %s", part == path ? "" : "...", part, reason);
 }
 
-/* ------------------------------------------------------------------------------------------------------------- probe
- */
+/* ------------------------------------------------------------------------------------------------------------ probe */
 
 /* Why what stands at the path may not be replaced; NULL when it may. A link or device would lose its nature by the
  * rename, and who takes away write permission wants to keep the file. */
@@ -71,8 +70,7 @@ static ew_status probe(const ew_output *output, ew_error *error) {
   return fault ? ew_output_fail(output->partial, fault, error) : EW_OK;
 }
 
-/* ------------------------------------------------------------------------------------------------------------- names
- */
+/* ------------------------------------------------------------------------------------------------------------ names */
 
 static ew_status make_names(ew_output *output, const char *path, ew_error *error) {
   size_t size = strlen(path) + sizeof PARTIAL_SUFFIX;
@@ -111,8 +109,7 @@ ew_status ew_output_open(ew_output *output, const char *path, ew_error *error) {
   return status;
 }
 
-/* ----------------------------------------------------------------------------------------------------------- publish
- */
+/* ---------------------------------------------------------------------------------------------------------- publish */
 
 /* 0, or the errno for which the data may not have reached the disk; a file system that cannot sync is no failure. */
 static int sync_path(const char *path, int flags) {

@@ -1,6 +1,7 @@
 /* SPDX-License-Identifier: GPL-3.0-or-later
  *
  * The rows of a parameter table: counting, finding, guessing which one was meant, and the complaint that names it. */
+#include "core/edit_distance.h"
 #include "core/parameters_internal.h"
 
 #include <stdarg.h>
@@ -61,41 +62,20 @@ bool ew_parameters_opens_prefix(const ew_parameter_table *table, size_t index) {
 
 /* -------------------------------------------------------------------------------------------------- nearest name */
 
-enum { LONGEST_COMPARED = 64 };
-
 static size_t least(size_t a, size_t b) {
   return a < b ? a : b;
-}
-
-/* Insertions, deletions and substitutions that turn one string into the other (Levenshtein 1966). */
-static size_t edit_distance(const char *a, size_t a_length, const char *b, size_t b_length) {
-  size_t cost[LONGEST_COMPARED + 1];
-  a_length = least(a_length, LONGEST_COMPARED);
-  b_length = least(b_length, LONGEST_COMPARED);
-  for (size_t j = 0; j <= b_length; j++)
-    cost[j] = j;
-  for (size_t i = 1; i <= a_length; i++) {
-    size_t diagonal = cost[0];
-    cost[0] = i;
-    for (size_t j = 1; j <= b_length; j++) {
-      size_t substituted = diagonal + (a[i - 1] != b[j - 1]);
-      diagonal = cost[j];
-      cost[j] = least(substituted, 1 + least(cost[j], cost[j - 1]));
-    }
-  }
-  return cost[b_length];
 }
 
 /* A right key in a wrong group is a common slip, so a group costs two edits at most. A name without a group may be
  * meant as either part. */
 static size_t name_distance(const char *given, const char *name) {
   size_t given_group = strcspn(given, "."), group = strcspn(name, ".");
-  size_t groups = edit_distance(given, given_group, name, group);
+  size_t groups = ew_edit_distance(given, given_group, name, group);
   const char *key = name + group + 1;
   if (given[given_group] == '\0')
-    return least(groups, edit_distance(given, given_group, key, strlen(key)));
+    return least(groups, ew_edit_distance(given, given_group, key, strlen(key)));
   const char *given_key = given + given_group + 1;
-  return least(groups, 2) + edit_distance(given_key, strlen(given_key), key, strlen(key));
+  return least(groups, 2) + ew_edit_distance(given_key, strlen(given_key), key, strlen(key));
 }
 
 const ew_parameter *ew_parameters_nearest(const ew_parameter_table *table, const char *name) {

@@ -134,7 +134,7 @@ void ew_limit_components(ew_galaxy *galaxy) {
 
 double ew_mass_inside(const ew_galaxy *galaxy, const ew_environment *environment, double radius) {
   double inside = ew_nfw_mass(&environment->halo, radius);
-  double stars = ew_ledger_mass(&galaxy->ledger, EW_LIVING_STARS) + ew_ledger_mass(&galaxy->ledger, EW_REMNANTS);
+  double stars = ew_stellar_mass(galaxy);
   if (galaxy->formed > 0.0)
     for (const ew_component *c = galaxy->component; c; c = c->next)
       if (c->mass > 0.0)

@@ -75,17 +75,22 @@ static double wind_mass(const ew_step *step) {
   return fmin(formed * loading(p, e->virial_velocity, e->redshift), by_energy);
 }
 
-/* Blows out that share of a reservoir, its metals that many times as easily. */
-static void blow(ew_ledger *ledger, ew_reservoir from, double share, double metal_loading) {
+/* Share of the metals in a wind that takes that share of the gas: thin winds one after the other, each as rich over the
+ * gas as the metal loading says. So it does not depend on the time step, and no metals stay without gas. */
+static double metal_share(double share, double metal_loading) {
+  return share < 1.0 ? 1.0 - pow(1.0 - share, metal_loading) : 1.0;
+}
+
+/* Blows out that share of a reservoir, metals included; a wind poor in metals is the lighter for it. */
+static void blow(ew_ledger *ledger, ew_reservoir from, double share, double metals_share) {
   const ew_composition *gas = &ledger->in[from];
   double metals = ew_composition_metals(gas), light = ew_composition_mass(gas) - metals;
   if (!(light > 0.0))
     return;
-  double metal_share = fmin(share * metal_loading, 1.0);
-  double light_share = fmin(fmax((share * (light + metals) - metal_share * metals) / light, 0.0), 1.0);
+  double light_share = fmin(fmax((share * (light + metals) - metals_share * metals) / light, 0.0), share);
   ew_composition out;
   for (int i = 0; i < EW_ELEMENT_COUNT; i++)
-    out.mass[i] = gas->mass[i] * (i > EW_HELIUM ? metal_share : light_share);
+    out.mass[i] = gas->mass[i] * (i > EW_HELIUM ? metals_share : light_share);
   ew_ledger_move(ledger, from, EW_EJECTED_GAS, &out);
 }
 
@@ -95,8 +100,8 @@ void ew_blow_wind(ew_step *step) {
   if (!(step->supernovae > 0.0 && gas > 0.0))
     return;
   double share = fmin(wind_mass(step) / gas, 1.0);
-  double metal_loading = step->environment->model->feedback.metal_loading;
-  blow(&galaxy->ledger, EW_DISC_GAS, share, metal_loading);
-  blow(&galaxy->ledger, EW_HEATED_GAS, share, metal_loading);
-  ew_release_supernovae(galaxy, share * metal_loading);
+  double metals_share = metal_share(share, step->environment->model->feedback.metal_loading);
+  blow(&galaxy->ledger, EW_DISC_GAS, share, metals_share);
+  blow(&galaxy->ledger, EW_HEATED_GAS, share, metals_share);
+  ew_release_supernovae(galaxy, metals_share);
 }

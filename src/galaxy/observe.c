@@ -75,6 +75,8 @@ static int64_t quenched(const ew_galaxy *galaxy, const ew_environment *environme
 static void observe_stars(ew_galaxy *galaxy, const ew_environment *environment, ew_observables *o) {
   tally sum = tally_events(galaxy, environment);
   bool shines = sum.light > 0.0;
+  double stars = ew_ledger_mass(&galaxy->ledger, EW_LIVING_STARS) + ew_ledger_mass(&galaxy->ledger, EW_REMNANTS);
+  o->stellar_mass = shines ? stars : 0.0;
   o->luminosity_v = sum.light;
   o->magnitude_v = shines ? EW_SUN_MAGNITUDE_V - 2.5 * log10(sum.light) : NAN;
   observe_abundances(&sum, o);
@@ -88,7 +90,6 @@ static void observe_stars(ew_galaxy *galaxy, const ew_environment *environment, 
 
 void ew_galaxy_observe(ew_galaxy *galaxy, const ew_environment *environment, ew_observables *o) {
   ew_galaxy_settle(galaxy, environment);
-  o->stellar_mass = ew_ledger_mass(&galaxy->ledger, EW_LIVING_STARS) + ew_ledger_mass(&galaxy->ledger, EW_REMNANTS);
   o->stellar_mass_formed = galaxy->formed;
   o->gas_mass = ew_gas_in_galaxy(galaxy);
   observe_stars(galaxy, environment, o);

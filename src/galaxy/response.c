@@ -1,8 +1,10 @@
 /* SPDX-License-Identifier: GPL-3.0-or-later
  *
  * Stars respond to gas that comes and goes, inside a dark halo that stays. Slow changes keep r M(<r); fast ones keep
- * the energy of a star on a circular orbit at the moment of loss. Without dark matter these are the textbook limits 1/e
- * and e/(2e - 1) for a share e that is left (Hills 1980, ApJ 235, 986). Baryons inside act as a point mass. */
+ * the energy of a star on a circular orbit at the moment of loss. For gas well inside the stars and without dark matter
+ * these are the textbook limits 1/e and e/(2e - 1) for a share e that is left (Hills 1980, ApJ 235, 986). Gas counts
+ * with its own profile, so that what leaves slowly and comes back slowly leaves no trace; of the stars themselves half
+ * is always inside. */
 #include "galaxy/state.h"
 
 #include <math.h>
@@ -13,23 +15,33 @@
 enum { MOST_STEPS = 60, WIDEST_STRIDES = 12 }; /* stars that would go further than 23 times out are laid down there */
 
 typedef struct {
+  double stars; /* inside the half-mass radius, Msun */
+  double gas;   /* all, Msun */
+  double scale; /* half-mass radius of the gas, kpc */
+} baryons;
+
+typedef struct {
   const ew_nfw *halo;
   double radius; /* before, kpc */
-  double before; /* baryons inside, Msun */
-  double after;
+  baryons before, after;
 } change;
 
+static double mass_inside(const change *c, const baryons *b, double radius) {
+  return ew_nfw_mass(c->halo, radius) + b->stars + b->gas * ew_plummer_share(radius, b->scale);
+}
+
 static double slow_balance(const change *c, double radius) {
-  return radius * (ew_nfw_mass(c->halo, radius) + c->after) - c->radius * (ew_nfw_mass(c->halo, c->radius) + c->before);
+  return radius * mass_inside(c, &c->after, radius) - c->radius * mass_inside(c, &c->before, c->radius);
 }
 
 static double potential(const change *c, double radius) {
-  return ew_nfw_potential(c->halo, radius) - EW_GRAVITY * c->after / radius;
+  double gas = c->after.gas / hypot(radius, c->after.scale / EW_HALF_MASS_RATIO);
+  return ew_nfw_potential(c->halo, radius) - EW_GRAVITY * (c->after.stars / radius + gas);
 }
 
 static double fast_balance(const change *c, double radius) {
-  double kinetic = 0.5 * EW_GRAVITY * (ew_nfw_mass(c->halo, c->radius) + c->before) / c->radius;
-  double settled = 0.5 * EW_GRAVITY * (ew_nfw_mass(c->halo, radius) + c->after) / radius;
+  double kinetic = 0.5 * EW_GRAVITY * mass_inside(c, &c->before, c->radius) / c->radius;
+  double settled = 0.5 * EW_GRAVITY * mass_inside(c, &c->after, radius) / radius;
   return settled + potential(c, radius) - kinetic - potential(c, c->radius);
 }
 
@@ -77,13 +89,16 @@ static void respond(ew_step *step, balance_function balance) {
   const ew_environment *e = step->environment;
   if (!e->model->sizes.gas_response || !(galaxy->formed > 0.0))
     return;
+  double stars = ew_stellar_mass(galaxy), gas = ew_gas_in_galaxy(galaxy);
   double radius = ew_half_mass_radius(galaxy), scale = ew_disc_half_mass_radius(galaxy, e);
-  double stars = 0.5 * ew_ledger_mass(&galaxy->ledger, EW_LIVING_STARS), gas = ew_gas_in_galaxy(galaxy);
-  change c = {&e->halo, radius, stars + galaxy->response_gas * ew_plummer_share(radius, galaxy->response_scale),
-              stars + gas * ew_plummer_share(radius, scale)};
-  if (fabs(c.after - c.before) < SMALLEST_CHANGE * (ew_nfw_mass(c.halo, radius) + c.before))
+  change c = {.halo = &e->halo, .radius = radius};
+  c.before = (baryons){0.5 * galaxy->response_stars, galaxy->response_gas, galaxy->response_scale};
+  c.after = (baryons){0.5 * stars, gas, scale};
+  double before = mass_inside(&c, &c.before, radius), after = mass_inside(&c, &c.after, radius);
+  if (fabs(after - before) < SMALLEST_CHANGE * before)
     return;
   ew_scale_components(galaxy, settle(&c, balance) / radius);
+  galaxy->response_stars = stars;
   galaxy->response_gas = gas;
   galaxy->response_scale = scale;
 }

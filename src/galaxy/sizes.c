@@ -156,10 +156,11 @@ static void join_cohorts(ew_galaxy *host, ew_galaxy *satellite) {
       join_cohort(&host->cohort[i], &satellite->cohort[i]);
 }
 
-/* Gas that arrives does not count as a change to which the stars respond: it comes with the merger. */
-static void join_gas(ew_galaxy *host, const ew_galaxy *satellite) {
+/* What arrives does not count as a change to which the stars respond: it comes with the merger. */
+static void join_contents(ew_galaxy *host, const ew_galaxy *satellite) {
   ew_ledger_add(&host->ledger, &satellite->ledger);
   host->response_gas += ew_gas_in_galaxy(satellite);
+  host->response_stars += ew_stellar_mass(satellite);
   host->held += satellite->held;
   host->held_squares += satellite->held_squares;
   host->recovers_at = fmax(host->recovers_at, satellite->recovers_at);
@@ -175,10 +176,10 @@ static void count_merger(ew_galaxy *host, const ew_galaxy *satellite, const ew_m
   host->last_merger_redshift = merger->redshift;
 }
 
-static void add_history(ew_galaxy *host, const ew_galaxy *satellite) {
+static void add_history(ew_galaxy *host, const ew_galaxy *satellite, const ew_environment *environment) {
   if (!(host->formed > 0.0)) {
     host->response_gas = ew_gas_in_galaxy(host);
-    host->response_scale = satellite->response_scale;
+    host->response_scale = ew_disc_half_mass_radius(host, environment);
   }
   host->formed += satellite->formed;
   host->half_mass_at = NAN;
@@ -195,8 +196,8 @@ ew_status ew_galaxy_merge(ew_galaxy *host, ew_galaxy *satellite, const ew_merger
   grow(host, satellite, merger, environment);
   if (!satellite)
     return EW_OK;
-  join_gas(host, satellite);
-  add_history(host, satellite);
+  join_contents(host, satellite);
+  add_history(host, satellite, environment);
   join_components(host, satellite);
   join_events(host, satellite);
   join_cohorts(host, satellite);

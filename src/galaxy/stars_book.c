@@ -68,7 +68,8 @@ void ew_cohort_add(ew_step *step, double mass, const ew_composition *fraction) {
     cohort->formed.mass[i] += mass * fraction->mass[i];
 }
 
-/* Stars are born with the radius of the disc as it stands. */
+/* Stars are born with the radius of the disc as it stands. Gas that turned into stars is no change that others would
+ * respond to. */
 void ew_component_add(ew_step *step, double mass) {
   ew_galaxy *galaxy = step->galaxy;
   ew_component *born = galaxy->born_here;
@@ -76,11 +77,17 @@ void ew_component_add(ew_step *step, double mass) {
   born->radius = running_mean(born->radius, born->mass, radius, mass);
   born->mass += mass;
   if (galaxy->formed == 0.0) {
-    galaxy->response_gas = ew_gas_in_galaxy(galaxy);
+    galaxy->response_gas = ew_gas_in_galaxy(galaxy) + mass;
     galaxy->response_scale = radius;
   }
+  galaxy->response_gas -= mass;
+  galaxy->response_stars += mass;
   galaxy->formed += mass;
   if (galaxy->event->metal_free)
     galaxy->formed_metal_free += mass;
   galaxy->last_formed_at = step->end;
+}
+
+double ew_stellar_mass(const ew_galaxy *galaxy) {
+  return ew_ledger_mass(&galaxy->ledger, EW_LIVING_STARS) + ew_ledger_mass(&galaxy->ledger, EW_REMNANTS);
 }

@@ -72,7 +72,8 @@ struct ew_galaxy {
   bool idle;                             /* no gas and no young stars: nothing happens but that stars grow old */
   double formed, formed_metal_free;      /* Msun */
   double last_formed_at;                 /* Gyr */
-  double response_gas, response_scale;   /* gas mass and disc half-mass radius that the stars have responded to */
+  double response_stars, response_gas;   /* Msun, that the stars have responded to */
+  double response_scale;                 /* kpc, half-mass radius of that gas */
   double half_mass_radius, half_mass_at; /* kpc, as last solved for, and `formed` at that time */
   double last_merger_redshift;
   int64_t luminous_mergers, dark_mergers;
@@ -120,6 +121,7 @@ void ew_release_supernovae(ew_galaxy *galaxy, double share);
 double ew_effective_supernovae(const ew_galaxy *galaxy);
 
 double ew_gas_in_galaxy(const ew_galaxy *galaxy); /* disc and heated gas, Msun */
+double ew_stellar_mass(const ew_galaxy *galaxy);  /* living stars and remnants, Msun */
 
 /* Half-mass radius of the gas disc, from spin [kpc]. */
 double ew_disc_half_mass_radius(const ew_galaxy *galaxy, const ew_environment *environment);

@@ -134,6 +134,7 @@ static void write_ready(crew *c) {
     pthread_mutex_lock(&c->lock);
     c->writing = false;
     if (status != EW_OK) {
+      (void)ew_fail(&error, status, "the rows of tree %lld could not be handed on", (long long)next->tree.tree);
       c->error = error;
     } else {
       next->ready = false;

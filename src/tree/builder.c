@@ -12,14 +12,14 @@
 #include <math.h>
 #include <stdlib.h>
 
-#define NODE_PRECISION   0.0085 /* relative error half-way between nodes: the type promises 0.01 anywhere between */
-#define LONGEST_STRIDE   0.25   /* of ln M between nodes: an exponential is then 0.0078 off a straight line */
+#define NODE_PRECISION   0.0065 /* relative error half-way between nodes: up to 1.5 times that elsewhere between */
+#define LONGEST_STRIDE   0.22   /* of ln M between nodes: an exponential is then 0.006 off a straight line */
 #define SHORTEST_STRIDE  0.03   /* even the plunge onto the resolution is within 0.005 of a straight line over this */
+#define MASS_ROUNDING    1e-14  /* of a mass by way of its logarithm */
 #define LARGEST_ATTEMPTS 1000   /* of the rejection, which accepts about every second share */
 
 struct ew_tree_builder {
   ew_split_tables tables;
-  const ew_cosmology *cosmology;
   double largest_mass;
 };
 
@@ -39,7 +39,6 @@ ew_status ew_tree_builder_new(ew_tree_builder **builder, const ew_spectrum *spec
   ew_tree_builder *fresh = calloc(1, sizeof *fresh);
   if (!fresh)
     return ew_fail_memory(error, "the tree builder");
-  fresh->cosmology = ew_spectrum_cosmology(spectrum);
   fresh->largest_mass = largest_mass;
   status = ew_split_tables_make(&fresh->tables, spectrum, parameters, largest_mass, error);
   if (status != EW_OK) {
@@ -75,15 +74,15 @@ typedef struct {
   double redshift;
 } walker;
 
-/* The halo when smooth loss has brought it down to that mass. Its redshift never falls on the way and stays at or below
- * the highest followed, where the table's straight lines would miss either by a hair. */
+/* The halo when smooth loss has brought it down to that mass. No rounding may make its redshift fall on the way, or
+ * pass the highest followed. */
 static walker drifted(const ew_split_tables *t, const walker *from, double log_mass) {
   double drift = ew_table_at(&t->drift, log_mass), clock = from->clock + (from->drift - drift);
   double redshift = fmin(ew_table_at(&t->redshift, clock), t->parameters.highest_redshift);
   return (walker){log_mass, drift, clock, fmax(redshift, from->redshift)};
 }
 
-/* Relative error of a straight line in (redshift, mass) half-way along the drift between two nodes. */
+/* Relative error of a straight line in (redshift, mass) half-way between two nodes of one drift. */
 static double chord_error(const ew_split_tables *t, const walker *from, const walker *to) {
   if (!(to->redshift > from->redshift))
     return 0.0;
@@ -93,17 +92,13 @@ static double chord_error(const ew_split_tables *t, const walker *from, const wa
   return fabs(from_mass + (to_mass - from_mass) * part - 1.0);
 }
 
-/* The next node on the way to `goal`: the goal itself if a straight line is good enough, else one of a fixed series of
- * strides, so that nodes do not depend on how far the way goes on. */
+/* The next node on the way to `goal`: the goal itself if a straight line is good enough. */
 static walker next_node(const ew_split_tables *t, const walker *from, double goal) {
-  double stride = LONGEST_STRIDE;
-  for (;;) {
-    walker next = drifted(t, from, fmax(from->log_mass - stride, goal));
-    if (from->log_mass - next.log_mass <= SHORTEST_STRIDE || chord_error(t, from, &next) <= NODE_PRECISION)
+  double left = from->log_mass - goal, stride = fmin(left, LONGEST_STRIDE);
+  for (;; stride *= 0.5) {
+    walker next = drifted(t, from, stride < left ? from->log_mass - stride : goal);
+    if (stride <= SHORTEST_STRIDE || chord_error(t, from, &next) <= NODE_PRECISION)
       return next;
-    do
-      stride *= 0.5;
-    while (from->log_mass - stride <= goal);
   }
 }
 
@@ -120,11 +115,11 @@ static bool drift_to(const ew_split_tables *t, walker *halo, double goal, ew_tre
 
 /* ln of the mass at which the branch next splits, or the resolution if it never does. */
 static double draw_split_mass(const ew_split_tables *t, const walker *halo, ew_stream *stream) {
-  double expected = ew_table_at(&t->hazard, halo->log_mass);
-  double left = expected > 0.0 ? expected - ew_draw_exponential(stream) : 0.0;
-  if (!(left > 0.0))
+  double lightest = t->log_resolution + log(2.0); /* that can split into two above the resolution */
+  if (!(halo->log_mass > lightest))
     return t->log_resolution;
-  return fmax(ew_log_mass_at(&t->hazard, halo->log_mass, left), t->log_resolution + log(2.0));
+  double left = ew_table_at(&t->hazard, halo->log_mass) - ew_draw_exponential(stream);
+  return left > 0.0 ? fmax(ew_table_inverse(&t->hazard, halo->log_mass, left), lightest) : t->log_resolution;
 }
 
 /* ln q of the smaller part, by rejection under a power law of the table. */
@@ -143,11 +138,17 @@ static double draw_log_share(const ew_split_tables *t, double log_mass, ew_strea
   return fmin(fmax(share, low), high);
 }
 
+/* Mass of a part, which is at the resolution if rounding hides by how much it is above. */
+static double part_mass(const ew_split_tables *t, double mass) {
+  double resolution = t->parameters.resolution_mass;
+  return mass > resolution * (1.0 + MASS_ROUNDING) ? mass : resolution;
+}
+
 /* Lays the two nodes of a merger, sends the smaller part to the stack, and goes on with the larger. */
 static bool split(const ew_split_tables *t, walker *halo, uint64_t ordinal, ew_stream *stream, ew_tree_memory *memory) {
-  double mass = exp(halo->log_mass), resolution = t->parameters.resolution_mass;
-  double smaller = fmax(mass * exp(draw_log_share(t, halo->log_mass, stream)), resolution);
-  double larger = fmax(mass - smaller, resolution);
+  double mass = exp(halo->log_mass);
+  double smaller = part_mass(t, mass * exp(draw_log_share(t, halo->log_mass, stream)));
+  double larger = part_mass(t, mass - smaller);
   halo->log_mass = log(larger);
   halo->drift = ew_table_at(&t->drift, halo->log_mass);
   return ew_tree_memory_add_node(memory, mass, halo->redshift) &&
@@ -162,16 +163,14 @@ static bool end_at_resolution(const ew_split_tables *t, walker *halo, ew_tree_me
 
 static bool end_at_highest_redshift(const ew_split_tables *t, walker *halo, ew_tree_memory *memory) {
   double left = halo->drift - (t->highest_clock - halo->clock);
-  double goal = ew_log_mass_at(&t->drift, halo->log_mass, left);
+  double goal = ew_table_inverse(&t->drift, halo->log_mass, left);
   return drift_to(t, halo, goal, memory) && ew_tree_memory_add_node(memory, exp(goal), t->parameters.highest_redshift);
 }
 
 static bool walk_branch(const ew_split_tables *t, const ew_walk *walk, const ew_draws *draws, ew_tree_memory *memory) {
   double log_mass = log(walk->mass);
   walker halo = {log_mass, ew_table_at(&t->drift, log_mass), walk->clock, walk->redshift};
-  if (halo.log_mass <= t->log_resolution || halo.clock >= t->highest_clock)
-    return true;
-  for (uint64_t ordinal = 0;; ordinal++) {
+  for (uint64_t ordinal = 0; halo.log_mass > t->log_resolution && halo.clock < t->highest_clock; ordinal++) {
     ew_stream stream = ew_stream_open(draws, EW_PROCESS_ASSEMBLY, walk->key, ordinal);
     double goal = draw_split_mass(t, &halo, &stream);
     if (drifted(t, &halo, goal).clock >= t->highest_clock)
@@ -181,6 +180,7 @@ static bool walk_branch(const ew_split_tables *t, const ew_walk *walk, const ew_
     if (!drift_to(t, &halo, goal, memory) || !split(t, &halo, ordinal, &stream, memory))
       return false;
   }
+  return true;
 }
 
 static ew_status refuse_root(const ew_tree_builder *builder, const ew_root *root, ew_error *error) {
@@ -200,8 +200,7 @@ ew_status ew_tree_grow(const ew_tree_builder *builder, const ew_root *root, cons
   if (status != EW_OK)
     return status;
   const ew_split_tables *t = &builder->tables;
-  double clock = ew_clock_of_barrier(t, ew_barrier(builder->cosmology, root->redshift));
-  bool room = ew_tree_memory_start(memory, root->mass, clock, root->redshift);
+  bool room = ew_tree_memory_start(memory, root->mass, ew_clock_of_redshift(t, root->redshift), root->redshift);
   ew_walk walk;
   while (room && ew_tree_memory_pop(memory, &walk))
     room = ew_tree_memory_open_branch(memory, &walk) && walk_branch(t, &walk, draws, memory);

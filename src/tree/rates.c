@@ -74,7 +74,7 @@ double ew_barrier_of_clock(const ew_split_tables *tables, double clock) {
   return pow(power * clock, 1.0 / power);
 }
 
-double ew_log_mass_at(const ew_table *rising, double from, double wanted) {
+double ew_table_inverse(const ew_table *rising, double from, double wanted) {
   const double *value = rising->value;
   double place = ceil((from - rising->first) * rising->inverse_step), last = (double)(rising->count - 1);
   size_t high = (size_t)fmin(fmax(place, 1.0), last), low = high - 1;
@@ -91,6 +91,10 @@ double ew_log_mass_at(const ew_table *rising, double from, double wanted) {
   }
   double part = value[high] > value[low] ? (wanted - value[low]) / (value[high] - value[low]) : 0.0;
   return fmin(ew_table_position(rising, low) + fmax(part, 0.0) * rising->step, from);
+}
+
+double ew_clock_of_redshift(const ew_split_tables *t, double redshift) {
+  return ew_table_inverse(&t->redshift, ew_table_position(&t->redshift, t->redshift.count - 1), redshift);
 }
 
 /* The step does not depend on the largest mass, and the redshifts below not on the highest followed: so neither does
@@ -168,7 +172,6 @@ static void fill_envelope(ew_split_tables *t) {
 
 static ew_status fill_redshift(ew_split_tables *t, const ew_cosmology *cosmology, ew_error *error) {
   double latest_clock = ew_clock_of_barrier(t, ew_barrier(cosmology, 0.0));
-  t->highest_clock = ew_clock_of_barrier(t, ew_barrier(cosmology, t->parameters.highest_redshift));
   double earliest_clock = ew_clock_of_barrier(t, ew_barrier(cosmology, EW_HIGHEST_REDSHIFT));
   ew_status status = ew_table_make(&t->redshift, latest_clock, earliest_clock, REDSHIFT_POINTS, error);
   if (status != EW_OK)
@@ -176,6 +179,7 @@ static ew_status fill_redshift(ew_split_tables *t, const ew_cosmology *cosmology
   for (size_t i = 0; i < t->redshift.count; i++)
     t->redshift.value[i] =
         ew_redshift_of_barrier(cosmology, ew_barrier_of_clock(t, ew_table_position(&t->redshift, i)));
+  t->highest_clock = ew_clock_of_redshift(t, t->parameters.highest_redshift);
   return EW_OK;
 }
 

@@ -37,10 +37,12 @@ double ew_log_split_density(const ew_split_tables *tables, double log_mass, doub
 double ew_split_rate_on_clock(const ew_split_tables *tables, double log_mass);
 double ew_smooth_rate_on_clock(const ew_split_tables *tables, double log_mass);
 
-/* ln M at which a table that rises with ln M has the value `wanted`, sought from `from` down and never above it. It is
- * the exact inverse of ew_table_at: a table of the inverse would be wrong by several waiting times in massive haloes.
- */
-double ew_log_mass_at(const ew_table *rising, double from, double wanted);
+/* Where a table that rises has the value `wanted`, sought from `from` down and never above it. It is the exact inverse
+ * of ew_table_at: a table of the inverse would be wrong by several waiting times in massive haloes. */
+double ew_table_inverse(const ew_table *rising, double from, double wanted);
+
+/* The inverse of the table of redshifts. */
+double ew_clock_of_redshift(const ew_split_tables *tables, double redshift);
 
 double ew_clock_of_barrier(const ew_split_tables *tables, double barrier);
 double ew_barrier_of_clock(const ew_split_tables *tables, double clock);

@@ -51,8 +51,7 @@ struct ew_tree_file {
   int64_t branches, nodes; /* pushed so far */
 };
 
-/* ------------------------------------------------------------------------------------------------------------ create
- */
+/* ----------------------------------------------------------------------------------------------------------- create */
 
 static ew_status put_cosmology(ew_hdf_file *file, const ew_cosmology_parameters *cosmology, ew_error *error) {
   const struct {
@@ -125,8 +124,7 @@ ew_status ew_tree_file_create(ew_tree_file **file, const char *path, const ew_tr
   return EW_OK;
 }
 
-/* ------------------------------------------------------------------------------------------------------------ append
- */
+/* ----------------------------------------------------------------------------------------------------------- append */
 
 static ew_status push_tree(ew_tree_file *file, const ew_tree *tree, ew_error *error) {
   const ew_branch *main_branch = &tree->branch[tree->branch_count - 1];
@@ -191,8 +189,7 @@ ew_status ew_tree_file_append(ew_tree_file *file, const ew_tree *tree, ew_error 
   return ew_hdf_seal(file->file, error);
 }
 
-/* ------------------------------------------------------------------------------------------------------------- close
- */
+/* ------------------------------------------------------------------------------------------------------------ close */
 
 uint64_t ew_tree_file_kept(ew_tree_file *file) {
   return ew_hdf_kept_rows(file->column[NUMBER]);

@@ -4,23 +4,10 @@
 #ifndef EW_TESTS_BENCHMARKS_BENCH_H
 #define EW_TESTS_BENCHMARKS_BENCH_H
 
-#include "elfinwood/cosmology.h"
+#include "planck18.h"
 
 #include <math.h>
 #include <stdlib.h>
-
-/* Planck 2018, matter and Lambda only. */
-static const ew_cosmology_parameters planck18 = {
-    .hubble = 0.6736,
-    .omega_matter = 0.3153,
-    .omega_baryon = 0.0493,
-    .spectral_index = 0.9649,
-    .sigma8 = 0.8111,
-    .cmb_temperature = 2.7255,
-    .neutrino_number = 3.046,
-    .radiation = false,
-    .collapse_threshold = EW_THRESHOLD_CONSTANT,
-};
 
 static inline void need(ew_status status, const ew_error *error) {
   if (status == EW_OK)

@@ -7,8 +7,7 @@
 
 #include <math.h>
 
-/* ----------------------------------------------------------------------------------------------------- distributions
- */
+/* ---------------------------------------------------------------------------------------------------- distributions */
 
 static const ew_distribution_range range = {-5.0, 11.0};
 static const double cell = 16.0 / EW_DISTRIBUTION_CELLS;
@@ -60,8 +59,7 @@ static void test_values_without_a_place(void **state) {
   free(distribution);
 }
 
-/* ------------------------------------------------------------------------------------------------------------ tables
- */
+/* ----------------------------------------------------------------------------------------------------------- tables */
 
 static ew_galaxy_row galaxy(double halo_mass, double luminosity, double metallicity) {
   ew_galaxy_row row = {.central = 1, .weight = 1.0, .halo_mass = halo_mass};

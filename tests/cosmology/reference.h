@@ -5,22 +5,10 @@
 #ifndef EW_TESTS_COSMOLOGY_REFERENCE_H
 #define EW_TESTS_COSMOLOGY_REFERENCE_H
 
-#include "elfinwood/cosmology.h"
+#include "planck18.h"
 
 #include <math.h>
 #include <stdlib.h>
-
-static const ew_cosmology_parameters planck18 = {
-    .hubble = 0.6736,
-    .omega_matter = 0.3153,
-    .omega_baryon = 0.0493,
-    .spectral_index = 0.9649,
-    .sigma8 = 0.8111,
-    .cmb_temperature = 2.7255,
-    .neutrino_number = 3.046,
-    .radiation = false,
-    .collapse_threshold = EW_THRESHOLD_CONSTANT,
-};
 
 /* The value must be within the relative tolerance of what is expected (which must not be 0); NaN is refused. */
 static inline void assert_close(double value, double expected, double tolerance, const char *what, double at) {

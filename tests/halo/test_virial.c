@@ -2,7 +2,7 @@
  *
  * Virial relations against the published scalings, against each other and against their definition. */
 #include "elfinwood/halo.h"
-#include "halo/planck18.h"
+#include "planck18.h"
 
 #include <math.h>
 #include <setjmp.h>
@@ -47,9 +47,9 @@ static void scalings(void **state) {
       double x = ew_omega_matter(cosmology, z) - 1.0;
       double overdensity = 18.0 * EW_PI * EW_PI + 82.0 * x - 39.0 * x * x;
       double f = planck18.omega_matter / (1.0 + x) * overdensity / (18.0 * EW_PI * EW_PI);
-      double m = masses[i] * PLANCK18_HUBBLE / 1e8;
+      double m = masses[i] * planck18.hubble / 1e8;
       double a = (1.0 + z) / 10.0;
-      double radius = 0.784 * cbrt(m / f) / a / PLANCK18_HUBBLE;
+      double radius = 0.784 * cbrt(m / f) / a / planck18.hubble;
       double velocity = 23.4 * cbrt(m) * pow(f, 1.0 / 6.0) * sqrt(a);
       double temperature = 1.98e4 * (0.59 / 0.6) * cbrt(m * m * f) * a;
       assert_close(ew_virial_radius(cosmology, masses[i], z), radius, SCALING_TOLERANCE);

@@ -92,6 +92,23 @@ static inline size_t last_node(const ew_branch *branch) {
   return branch->first_node + (size_t)branch->node_count - 1;
 }
 
+/* The law that trees are grown by, written down once more without tables or clocks. */
+typedef struct {
+  const ew_spectrum *spectrum;
+  const double *coefficients;
+  double mass;
+} law;
+
+/* q dN/dq by Parkinson, Cole & Helly 2008, eqs 2 and 3, at barrier 1. */
+static inline double law_density(const law *l, double log_share) {
+  double share = exp(log_share), sigma1 = ew_sigma(l->spectrum, share * l->mass);
+  double sigma2 = ew_sigma(l->spectrum, l->mass), slope = -ew_sigma_slope(l->spectrum, share * l->mass);
+  double gap = sigma1 * sigma1 - sigma2 * sigma2;
+  double correction =
+      l->coefficients[0] * pow(sigma1 / sigma2, l->coefficients[1]) * pow(1.0 / sigma2, l->coefficients[2]);
+  return sqrt(2.0 / EW_PI) * sigma1 * sigma1 / pow(gap, 1.5) * slope * correction / share;
+}
+
 static inline int compare_numbers(const void *a, const void *b) {
   double x = *(const double *)a, y = *(const double *)b;
   return (x > y) - (x < y);

@@ -1,16 +1,14 @@
 /* SPDX-License-Identifier: GPL-3.0-or-later
  *
- * The universe that the tests of this room stand in: the one of the reference tables in tests/data, matter and Lambda
- * only. */
-#ifndef EW_TESTS_HALO_PLANCK18_H
-#define EW_TESTS_HALO_PLANCK18_H
+ * The universe that tests and benchmarks stand in: that of the reference tables in tests/data, matter and Lambda only.
+ */
+#ifndef EW_TESTS_PLANCK18_H
+#define EW_TESTS_PLANCK18_H
 
 #include "elfinwood/cosmology.h"
 
-#define PLANCK18_HUBBLE 0.6736
-
 static const ew_cosmology_parameters planck18 = {
-    .hubble = PLANCK18_HUBBLE,
+    .hubble = 0.6736,
     .omega_matter = 0.3153,
     .omega_baryon = 0.0493,
     .spectral_index = 0.9649,
