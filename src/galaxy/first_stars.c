@@ -145,7 +145,7 @@ static void form_star(ew_step *step, double star, ew_star_event *event, bool hyp
     fraction.mass[i] /= gas;
   ew_ledger_move_mass(ledger, EW_DISC_GAS, EW_LIVING_STARS, star);
   ew_event_add(event, star, &fraction);
-  ew_component_add(step, star);
+  ew_component_add(step, star, ew_disc_half_mass_radius(step->galaxy, step->environment));
   schedule(step, star, hypernova, &fraction);
 }
 

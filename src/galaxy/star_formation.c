@@ -116,6 +116,10 @@ static const double ring_radius[RINGS] = {0.403527, 0.789671, 1.131537, 1.486065
 static const double ring_column[RINGS] = {0.667960, 0.453994, 0.322537, 0.226261,
                                           0.151550, 0.092416, 0.045955, 0.011421};
 
+/* Edges of the rings; the outermost ends where 99 per cent of the mass lie inside. */
+static const double ring_edge[RINGS + 1] = {0.0,      0.609381, 0.961279, 1.305149, 1.678347,
+                                            2.118031, 2.692635, 3.607024, 6.638352};
+
 double ew_disc_half_mass_radius(const ew_galaxy *galaxy, const ew_environment *environment) {
   double scale = galaxy->luck.spin / sqrt(2.0) * environment->halo.radius * environment->model->sizes.birth_factor;
   return EW_EXPONENTIAL_HALF * scale;
@@ -127,22 +131,39 @@ static double central_column(double mass, double half_mass_radius) {
   return mass / (2.0 * EW_PI * scale * scale * KPC2_IN_PC2);
 }
 
-/* Molecular share of the disc's gas. Stars lie as an exponential of their own half-mass radius. */
-static double molecular_share(const ew_step *step, double gas_mass) {
+/* The disc's molecular gas: its share of all gas, and the radius that holds half of it, at which stars are born. */
+typedef struct {
+  double share;
+  double half_mass_radius; /* kpc */
+} molecular_gas;
+
+/* Molecular share in each ring. Stars lie as an exponential of their own half-mass radius. */
+static void fill_rings(const ew_step *step, double gas_mass, double disc, double share[RINGS]) {
   const ew_star_formation_parameters *p = &step->environment->model->star_formation;
-  double disc = ew_disc_half_mass_radius(step->galaxy, step->environment);
   double stars = ew_half_mass_radius(step->galaxy);
   double gas_column = central_column(gas_mass, disc);
   double star_mass = ew_ledger_mass(&step->galaxy->ledger, EW_LIVING_STARS);
   double star_column = stars > 0.0 ? p->dispersion_ratio * central_column(star_mass, stars) : 0.0;
-  double stretch = stars > 0.0 ? disc / stars : 0.0, sum = 0.0;
+  double stretch = stars > 0.0 ? disc / stars : 0.0;
   for (int i = 0; i < RINGS; i++) {
     double gas = gas_column * ring_column[i];
     double pressure = PRESSURE_OF_COLUMN * gas * (gas + star_column * exp(-ring_radius[i] * stretch));
     double ratio = pow(pressure / p->pressure_scale, p->pressure_slope);
-    sum += ratio / (1.0 + ratio);
+    share[i] = ratio / (1.0 + ratio);
   }
-  return sum / RINGS;
+}
+
+static molecular_gas find_molecular_gas(const ew_step *step, double gas_mass) {
+  double disc = ew_disc_half_mass_radius(step->galaxy, step->environment), share[RINGS], sum = 0.0, inside = 0.0;
+  fill_rings(step, gas_mass, disc, share);
+  for (int i = 0; i < RINGS; i++)
+    sum += share[i];
+  int ring = 0;
+  while (ring + 1 < RINGS && inside + share[ring] < 0.5 * sum)
+    inside += share[ring++];
+  double part = sum > 0.0 ? (0.5 * sum - inside) / share[ring] : 0.5;
+  double radius = ring_edge[ring] + part * (ring_edge[ring + 1] - ring_edge[ring]);
+  return (molecular_gas){sum / RINGS, radius * disc / EW_EXPONENTIAL_HALF};
 }
 
 /* Deaths of a cluster light enough to be drawn star by star. */
@@ -192,6 +213,7 @@ typedef struct {
   ew_step *step;
   ew_star_event *event;
   ew_stream masses, mixing, deaths;
+  double radius;                                   /* kpc, at which stars are born */
   double formed, pooled;                           /* Msun: all, and of that what dies by bins */
   ew_composition formed_elements, pooled_elements; /* Msun */
 } birth;
@@ -212,7 +234,7 @@ static void take_from_gas(birth *b, double mass, const ew_composition *fraction)
 
 static void write_down(birth *b, double mass, const ew_composition *fraction) {
   ew_event_add(b->event, mass, fraction);
-  ew_component_add(b->step, mass);
+  ew_component_add(b->step, mass, b->radius);
   b->formed += mass;
   add_scaled(&b->formed_elements, fraction, mass);
 }
@@ -284,8 +306,11 @@ static void form_by_classes(birth *b, double number, const ew_power_law *law) {
   }
 }
 
-static void form_clusters(ew_step *step, double expected, const ew_power_law *law) {
+static void form_clusters(ew_step *step, const molecular_gas *gas, const ew_power_law *law) {
+  double time_scale = step->environment->model->star_formation.depletion_time;
+  double expected = ew_ledger_mass(&step->galaxy->ledger, EW_DISC_GAS) * gas->share * ew_step_decay(step, time_scale);
   birth b = {.step = step,
+             .radius = gas->half_mass_radius,
              .masses = ew_step_stream(step, EW_PROCESS_BURSTS, EW_DRAW_CLUSTERS),
              .mixing = ew_step_stream(step, EW_PROCESS_MIXING, EW_DRAW_MIXING),
              .deaths = ew_step_stream(step, EW_PROCESS_BURSTS, EW_DRAW_SUPERNOVAE)};
@@ -311,6 +336,6 @@ void ew_form_stars(ew_step *step) {
     ew_form_first_stars(step);
     return;
   }
-  double expected = gas * molecular_share(step, gas) * ew_step_decay(step, p->depletion_time);
-  form_clusters(step, expected, &law);
+  molecular_gas molecular = find_molecular_gas(step, gas);
+  form_clusters(step, &molecular, &law);
 }

