@@ -1,7 +1,8 @@
 /* SPDX-License-Identifier: GPL-3.0-or-later
  *
  * First stars: gas below the critical metallicity forms a burst of stars drawn one by one from a top-heavy IMF. Their
- * light heats all gas of the galaxy until the last of them has died; their supernovae decide whether the halo keeps it.
+ * light heats all gas of the galaxy until the last massive one has died; their supernovae decide whether the halo keeps
+ * it.
  */
 #include "galaxy/state.h"
 
@@ -120,7 +121,7 @@ const ew_process_record ew_first_star_process = {
 enum { MOST_STARS = 4096 }; /* in one burst */
 
 /* Stars that outlive the span of pending deaths but not the age of the universe die at the end of that span: what they
- * give back is early by at most a few hundred Myr. Longer-lived ones stay. */
+ * give back is early, by less than 1 Gyr above 2 Msun, by more for lighter ones. Those that live on stay. */
 static void schedule(ew_step *step, double star, bool hypernova, const ew_composition *fraction) {
   const ew_stars *stars = step->environment->world->stars;
   double life = ew_lifetime_metal_free(stars, star);
@@ -149,6 +150,12 @@ static void form_star(ew_step *step, double star, ew_star_event *event, bool hyp
   schedule(step, star, hypernova, &fraction);
 }
 
+/* How long a star heats gas: for all its life if it is one of those that explode or collapse; others are too cool. */
+static double heating_time(const ew_step *step, double star) {
+  const ew_stars *stars = step->environment->world->stars;
+  return star >= ew_stars_get(stars)->supernova_mass ? ew_lifetime_metal_free(stars, star) : 0.0;
+}
+
 /* All gas of the galaxy is heated until the longest-lived massive star has died. */
 static void heat_gas(ew_step *step, double longest_life) {
   ew_ledger_move_share(&step->galaxy->ledger, EW_DISC_GAS, EW_HEATED_GAS, 1.0);
@@ -172,7 +179,7 @@ void ew_form_first_stars(ew_step *step) {
       return;
     form_star(step, star, event, hypernova);
     left -= star;
-    longest_life = fmax(longest_life, fmin(ew_lifetime_metal_free(e->world->stars, star), EW_PENDING_SPAN));
+    longest_life = fmax(longest_life, heating_time(step, star));
   }
   if (!event)
     return;

@@ -5,6 +5,8 @@
 
 #include <math.h>
 
+#define TRACE 1e-9 /* of solar: less of an element is what rounding leaves when a wind takes all metals */
+
 ew_star_event *ew_event_of_slot(ew_step *step, bool metal_free) {
   ew_galaxy *galaxy = step->galaxy;
   ew_star_event *event = ew_arena_take(galaxy->arena, sizeof *event);
@@ -38,13 +40,16 @@ void ew_event_add(ew_star_event *event, double mass, const ew_composition *fract
   double metals = ew_composition_metals(fraction);
   event->metal_fraction = running_mean(event->metal_fraction, event->mass, metals, mass);
   event->mass += mass;
-  if (!(fraction->mass[EW_IRON] > 0.0) || event->metal_free)
+  if (!(fraction->mass[EW_IRON] > TRACE * ew_solar.mass[EW_IRON]) || event->metal_free)
     return;
   double iron = ew_abundance(fraction, EW_IRON, EW_HYDROGEN), weight = event->iron_mass;
   event->iron = running_mean(event->iron, weight, iron, mass);
   event->iron_square = running_mean(event->iron_square, weight, iron * iron, mass);
-  for (int i = EW_HELIUM + 1; i < EW_ELEMENT_COUNT; i++)
-    event->ratio[i] = running_mean(event->ratio[i], weight, ew_abundance(fraction, (ew_element)i, EW_IRON), mass);
+  ew_composition held = *fraction;
+  for (int i = EW_HELIUM + 1; i < EW_ELEMENT_COUNT; i++) {
+    held.mass[i] = fmax(held.mass[i], TRACE * ew_solar.mass[i]);
+    event->ratio[i] = running_mean(event->ratio[i], weight, ew_abundance(&held, (ew_element)i, EW_IRON), mass);
+  }
   event->iron_mass += mass;
 }
 

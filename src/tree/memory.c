@@ -81,7 +81,7 @@ bool ew_tree_memory_start(ew_tree_memory *memory, double mass, double clock, dou
 }
 
 bool ew_tree_memory_push(ew_tree_memory *memory, double mass, double clock, double redshift, uint64_t ordinal) {
-  uint64_t key = ew_branch_key_child(ew_tree_memory_branch_key(memory), ordinal);
+  uint64_t key = ew_branch_key_child(memory->branch[memory->branch_count - 1].key, ordinal);
   return push(memory, (ew_walk){mass, clock, redshift, key, (int64_t)memory->branch_count - 1, memory->node_count - 1});
 }
 
@@ -104,10 +104,6 @@ bool ew_tree_memory_open_branch(ew_tree_memory *memory, const ew_walk *walk) {
                                                .joins_branch = (int32_t)walk->joins_branch,
                                                .joins_node = (uint32_t)walk->joins_node};
   return ew_tree_memory_add_node(memory, walk->mass, walk->redshift);
-}
-
-uint64_t ew_tree_memory_branch_key(const ew_tree_memory *memory) {
-  return memory->branch[memory->branch_count - 1].key;
 }
 
 static void reverse(double *value, size_t count) {

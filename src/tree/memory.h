@@ -18,7 +18,6 @@ typedef struct {
 bool ew_tree_memory_start(ew_tree_memory *memory, double mass, double clock, double redshift);
 bool ew_tree_memory_pop(ew_tree_memory *memory, ew_walk *walk);               /* false: nothing left */
 bool ew_tree_memory_open_branch(ew_tree_memory *memory, const ew_walk *walk); /* with its latest node */
-uint64_t ew_tree_memory_branch_key(const ew_tree_memory *memory);             /* of the open branch */
 bool ew_tree_memory_add_node(ew_tree_memory *memory, double mass, double redshift);
 
 /* The part that joined the open branch at the node just laid, by that ordinal of its splits. */

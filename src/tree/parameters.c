@@ -3,7 +3,7 @@
  * Parameter rows of the tree room. */
 #include "elfinwood/tree.h"
 
-#define PARKINSON "Parkinson, Cole & Helly 2008, MNRAS 383, 557, Table 1"
+#define PARKINSON "Parkinson, Cole & Helly 2008, MNRAS 383, 557"
 
 static const ew_choice sources[] = {
     {"grow", "grown by extended Press-Schechter", PARKINSON},

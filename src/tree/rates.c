@@ -1,7 +1,7 @@
 /* SPDX-License-Identifier: GPL-3.0-or-later
  *
- * Rates of splits and smooth loss by Parkinson, Cole & Helly 2008, MNRAS 383, 557, eqs 2-4, and the tables along the
- * drift. Integrals use Gauss-Legendre rules over panels short against the scale on which the integrand bends. */
+ * Rates of splits and smooth loss by Parkinson, Cole & Helly 2008, MNRAS 383, 557, and the tables along the drift.
+ * Integrals use Gauss-Legendre rules over panels short against the scale on which the integrand bends. */
 #include "tree/rates.h"
 
 #include <math.h>

@@ -118,7 +118,7 @@ typedef struct {
   uint64_t keys;
   ew_ledger gone; /* of galaxies that were dissolved */
   int mergers, infalls;
-  double received; /* Msun that came with dark haloes */
+  double taken_in; /* Msun, by all, from outside */
 } play;
 
 static void enter(play *p, actor *a, double mass) {
@@ -178,10 +178,11 @@ static void live_one_slot(play *p, actor *a) {
   if (happens(p, 1.0)) {
     ew_received dark = {.baryons = 1e3 * a->mass / 1e6, .gas = 500.0 * a->mass / 1e6, .metal_fraction = 1e-6};
     ew_galaxy_receive(a->galaxy, &dark, &p->s->world);
-    p->received += dark.gas;
+    p->taken_in += dark.gas;
   }
   set_environment(p, a);
   stage_advance(p->s, a->galaxy);
+  p->taken_in += a->galaxy->supply;
 }
 
 static void play_slot(play *p, size_t slot) {
@@ -198,12 +199,13 @@ static void assert_all_sound(const play *p) {
     assert_sound(p->actor[i].galaxy);
 }
 
-/* From outside came, all in all, what all galaxies hold: infall only hands over. */
+/* From outside came, all in all, what was supplied: infall and mergers only hand over. */
 static void assert_nothing_lost_in_between(const play *p) {
   ew_ledger all = p->gone;
   for (int i = 0; i < ACTORS; i++)
     ew_ledger_add(&all, &p->actor[i].galaxy->ledger);
   assert_true(ew_ledger_imbalance(&all) <= BALANCE);
+  assert_close(-ew_ledger_mass(&all, EW_OUTSIDE), p->taken_in, BOOKS);
 }
 
 static void play_history(play *p) {

@@ -112,6 +112,8 @@ static void stars_heat_all_gas_while_they_live(void **state) {
   assert_close(mass_in(galaxy, EW_HEATED_GAS), 1e6 - 20.0, 1e-6);
   assert_close(galaxy->recovers_at, step.end + ew_lifetime_metal_free(s->stars, 20.0), 1e-5);
   assert_conserved(galaxy);
+  stars_of(s, 5.0, 5.001, 1.0);
+  assert_close(burst(s, 1e6, 0)->recovers_at, step.end, ROUNDING); /* too cool to heat gas for long */
 }
 
 /* Draws belong to the ordinal of the burst, not to the slot: later is the same, and the next one is another. */

@@ -145,8 +145,8 @@ static void half_light_radius_of_two_components(void **state) {
   assert_close(inside, 0.5 * (light[0] + light[1]), 1e-4);
 }
 
-/* Three events of 50, 30 and 20: half is there halfway through the first, nine tenths halfway through the last... each
- * spread over its own step of 10 Myr. */
+/* Three events of 50, 30 and 20, each spread evenly over its step of 10 Myr: half have formed at the end of the first,
+ * nine tenths halfway through the last. */
 static void formation_times_by_hand(void **state) {
   stage *s = stage_fresh(state);
   ew_galaxy *galaxy = stage_galaxy(s);
@@ -222,6 +222,7 @@ static void observing_changes_nothing(void **state) {
   stage_slot(s, 200);
   put_stars(s, galaxy, 1e6, 1e-4);
   ew_observables once = look_at(s, galaxy), twice = look_at(s, galaxy);
+  assert_close(galaxy->component->light, twice.luminosity_v, ROUNDING);
   assert_true(once.stellar_mass == twice.stellar_mass && once.gas_mass == twice.gas_mass);
   assert_true(once.luminosity_v == twice.luminosity_v && once.metallicity == twice.metallicity);
   assert_true(once.half_light_radius == twice.half_light_radius);

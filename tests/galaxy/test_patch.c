@@ -4,7 +4,7 @@
  * shared by all. */
 #include "galaxy/stage.h"
 
-enum { DRAWS = 4000 };
+enum { DRAWS = 60000 };
 
 /* A patch of the tree of that number, with a calendar of few slots to be quick. */
 static ew_patch patch_of(stage *s, uint64_t tree) {

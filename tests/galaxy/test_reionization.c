@@ -157,9 +157,9 @@ static void what_joined_has_taken_in_its_part(void **state) {
 }
 
 /* Metals of what flows in at that redshift, as a mass fraction. */
-static double inflow_metals(stage *s, double redshift) {
+static double inflow_metals(stage *s, double enrichment_redshift, double redshift) {
   ew_galaxy *galaxy = stage_galaxy(s);
-  galaxy->luck.enrichment_redshift = 10.0;
+  galaxy->luck.enrichment_redshift = enrichment_redshift;
   galaxy->luck.external_metals = 3e-6;
   stage_at(s, redshift);
   stage_halo(s, 1e11);
@@ -168,14 +168,16 @@ static double inflow_metals(stage *s, double redshift) {
   return ew_composition_metals(&galaxy->ledger.in[EW_HALO_GAS]) / mass_in(galaxy, EW_HALO_GAS);
 }
 
-/* Ionized at z = 8; this branch is enriched from z = 10 on. Where luck comes late, reionization enriches. */
+/* Ionized at z = 8; one branch is enriched from z = 10 on, the other by reionization before its luck would have it. */
 static void inflow_carries_metals_once_enriched(void **state) {
   stage *s = stage_fresh(state);
-  assert_true(inflow_metals(s, 10.5) == 0.0);
-  assert_close(inflow_metals(s, 9.5), 3e-6, 1e-9);
-  assert_close(inflow_metals(s, 2.0), 3e-6, 1e-9);
+  assert_true(inflow_metals(s, 10.0, 10.5) == 0.0);
+  assert_close(inflow_metals(s, 10.0, 9.5), 3e-6, 1e-9);
+  assert_close(inflow_metals(s, 10.0, 2.0), 3e-6, 1e-9);
+  assert_true(inflow_metals(s, 6.1, 8.5) == 0.0);
+  assert_close(inflow_metals(s, 6.1, 7.5), 3e-6, 1e-9);
   s->settings.model.gas.external_enrichment = false;
-  assert_true(inflow_metals(s, 2.0) == 0.0);
+  assert_true(inflow_metals(s, 10.0, 2.0) == 0.0);
 }
 
 static ew_galaxy *gaseous_galaxy(stage *s) {

@@ -147,6 +147,10 @@ static void half_mass_radius_of_two_spheres(void **state) {
     inside += mass[i] * pow(1.0 + 1.0 / (x * x), -1.5);
   }
   assert_close(inside, 2e5, 1e-4);
+  ew_environment bare = s->environment;
+  bare.halo.mass = 1e-9;
+  double stars = ew_stellar_mass(host);
+  assert_close(ew_mass_inside(host, &bare, r), 0.5 * stars, 1e-3);
   assert_close(ew_plummer_share(0.7, 0.7), 0.5, 1e-4);
 }
 
@@ -176,6 +180,13 @@ static void components_are_bounded(void **state) {
     assert_non_null(listed);
   }
   assert_int_equal(events, 201);
+  ew_observables seen;
+  stage_slot(s, s->calendar.slot_count - 1);
+  ew_galaxy_observe(host, &s->environment, &seen);
+  double light = 0.0;
+  for (const ew_component *c = host->component; c; c = c->next)
+    light += c->light;
+  assert_close(light, seen.luminosity_v, 1e-9);
   assert_conserved(host);
 }
 

@@ -16,17 +16,17 @@
 #include <cmocka.h>
 
 #if defined(__SANITIZE_ADDRESS__) || defined(__SANITIZE_THREAD__)
-#define EW_SLOWNESS 8
+#define EW_SLOWNESS 4
 #elif defined(__has_feature)
 #if __has_feature(address_sanitizer) || __has_feature(thread_sanitizer)
-#define EW_SLOWNESS 8
+#define EW_SLOWNESS 4
 #endif
 #endif
 #ifndef EW_SLOWNESS
 #define EW_SLOWNESS 1
 #endif
 
-/* So many trees, or an eighth of them under a sanitizer, where only faults and not numbers are looked for. */
+/* So many trees, or a quarter of them under a sanitizer, where only faults and not numbers are looked for. */
 #define EW_TREES(count) ((count) / EW_SLOWNESS)
 
 static inline void need_success(ew_status status, const ew_error *error) {

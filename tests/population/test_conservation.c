@@ -7,7 +7,7 @@
 #include "population/evolution.h"
 #include "sane_rows.h"
 
-enum { LABORATORIES = 6, PER_LABORATORY = EW_TREES(40) };
+enum { LABORATORIES = 6, PER_LABORATORY = EW_TREES(52) };
 
 #define ROUNDING 1e-10 /* of the turnover: what a long run of additions may lose */
 
@@ -191,16 +191,17 @@ typedef struct {
   ew_laboratory *laboratory;
   ew_tree_memory *memory;
   ew_evolution *evolution;
+  ew_tree tree;
+  ew_draws draws;
 } bench;
 
-static void evolve(const bench *b, uint64_t number, const ew_model *model) {
-  ew_draws draws = {.seed = 2385, .tree = number};
-  ew_root root = ew_root_draw(&b->laboratory->settings, &draws);
-  ew_tree tree;
+static void evolve(bench *b, uint64_t number, const ew_model *model) {
+  b->draws = (ew_draws){.seed = 2385, .tree = number};
+  ew_root root = ew_root_draw(&b->laboratory->settings, &b->draws);
   ew_error error = {0};
-  need_success(ew_tree_grow(b->laboratory->builder, &root, &draws, b->memory, &tree, &error), &error);
-  need_success(ew_evolution_load(b->evolution, b->laboratory, &tree, &error), &error);
-  need_success(ew_evolution_run(b->evolution, model, &draws, &error), &error);
+  need_success(ew_tree_grow(b->laboratory->builder, &root, &b->draws, b->memory, &b->tree, &error), &error);
+  need_success(ew_evolution_load(b->evolution, b->laboratory, &b->tree, &error), &error);
+  need_success(ew_evolution_run(b->evolution, model, &b->draws, &error), &error);
 }
 
 static void check_everything(const bench *b) {
@@ -218,7 +219,7 @@ static void random_models_on_random_trees(void **state) {
   (void)state;
   size_t with_stars = 0;
   for (uint64_t l = 0; l < LABORATORIES; l++) {
-    bench b = {random_laboratory(l), ew_tree_memory_new(), ew_evolution_new()};
+    bench b = {.laboratory = random_laboratory(l), .memory = ew_tree_memory_new(), .evolution = ew_evolution_new()};
     assert_true(b.memory && b.evolution);
     for (uint64_t number = l * PER_LABORATORY; number < (l + 1) * PER_LABORATORY; number++) {
       ew_model model = random_model(number);

@@ -99,7 +99,7 @@ typedef struct {
   double mass;
 } law;
 
-/* q dN/dq by Parkinson, Cole & Helly 2008, eqs 2 and 3, at barrier 1. */
+/* q dN/dq by Parkinson, Cole & Helly 2008, MNRAS 383, 557, at barrier 1. */
 static inline double law_density(const law *l, double log_share) {
   double share = exp(log_share), sigma1 = ew_sigma(l->spectrum, share * l->mass);
   double sigma2 = ew_sigma(l->spectrum, l->mass), slope = -ew_sigma_slope(l->spectrum, share * l->mass);

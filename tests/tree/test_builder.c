@@ -183,6 +183,21 @@ static void test_smallest_trees(void **state) {
   fell(&f);
 }
 
+/* A halo of a hair less than twice the resolution never splits, though the table of the hazard rounds that corner. */
+static void test_too_light_to_split(void **state) {
+  (void)state;
+  ew_tree_parameters parameters = tree_parameters(1e7, published);
+  forest f = plant(&planck18, &parameters, 3e7);
+  for (uint64_t number = 0; number < 1000000; number++) {
+    ew_error error = {0};
+    ew_tree tree;
+    ew_root root = {.number = number, .mass = 1.99999e7};
+    assert_int_equal(ew_tree_grow(f.builder, &root, &(ew_draws){.tree = number}, f.memory, &tree, &error), EW_OK);
+    assert_int_equal(tree.branch_count, 1);
+  }
+  fell(&f);
+}
+
 /* ------------------------------------------------------------------------------------------------------------ streams
  */
 
@@ -428,6 +443,7 @@ int main(void) {
   const struct CMUnitTest tests[] = {
       cmocka_unit_test(test_structure_of_random_trees),
       cmocka_unit_test(test_smallest_trees),
+      cmocka_unit_test(test_too_light_to_split),
       cmocka_unit_test(test_draws_make_the_tree),
       cmocka_unit_test(test_nothing_else_makes_the_tree),
       cmocka_unit_test(test_refusal_spoils_nothing),

@@ -93,8 +93,8 @@ static void test_formation(void **state) {
   assert_near(ew_formation_redshift(&tree, root, 1.0), 1.0);
   assert_near(ew_formation_redshift(&tree, root, 60.0 / 175.0), 6.0); /* its first mass */
   assert_near(ew_formation_redshift(&tree, root, 0.1), 6.0);          /* never below */
-  assert_near(ew_formation_redshift(&tree, root, 1.5), 1.0);          /* never above */
   assert_near(ew_formation_redshift(&tree, satellite, 0.5), 4.0);     /* 22.5 */
+  assert_near(ew_formation_redshift(&tree, satellite, 1.5), 1.0);     /* never above */
   assert_near(ew_formation_redshift(&tree, point, 0.5), 2.0);
 }
 
@@ -107,6 +107,7 @@ static void test_formation_of_a_branch_that_shrinks(void **state) {
   memcpy(f.redshift, (double[]){8.0, 6.0, 4.0, 2.0}, 4 * sizeof(double));
   ew_tree tree = tree_of(&f);
   assert_near(ew_formation_redshift(&tree, &tree.branch[3], 0.5), 7.0);
+  assert_near(ew_formation_redshift(&tree, &tree.branch[3], 0.9), 6.0);
   assert_near(ew_formation_redshift(&tree, &tree.branch[3], 0.95), 2.0 + 2.0 / 12.0);
   assert_near(ew_branch_mass(&tree, &tree.branch[3], 5.0), 65.0);
 }

@@ -68,7 +68,7 @@ static void test_rates_of_an_independent_program(void **state) {
 
 /* ------------------------------------------------------------------------------------------------ the published law */
 
-/* Of the smooth loss, over u = sigma2/sqrt(sigma1^2 - sigma2^2): their eq. 5. */
+/* Their smooth loss is an integral of this over u = sigma2/sqrt(sigma1^2 - sigma2^2). */
 static double law_loss(double u, void *context) {
   const law *l = context;
   return pow(1.0 + 1.0 / (u * u), 0.5 * l->coefficients[1]);

@@ -68,7 +68,7 @@ static void count_near_root(double mass, double resolution, double redshift, con
   forest f = plant(&planck18, &parameters, mass);
   double from = ew_barrier(f.cosmology, redshift), to = ew_barrier(f.cosmology, redshift + 0.01);
   sample splits = {0}, smooth = {0};
-  for (uint64_t i = 0; i < 40000; i++) {
+  for (uint64_t i = 0; i < 100000; i++) {
     ew_tree tree = grow(&f, mass, redshift, i);
     add(&splits, (double)main_splits(&tree));
     add(&smooth, smooth_gain(&tree) / mass);
@@ -254,7 +254,7 @@ static const double ANALYTIC_BIAS = 0.01;
 
 /* Plain trees shortly before the root: number of progenitors in bins of a factor four from three resolutions up. */
 static void check_analytic_form(double mass, double resolution) {
-  enum { BINS = 4, TREES = 50000 };
+  enum { BINS = 4, TREES = 100000 };
   const double redshift = 5.95, rise = 0.05;
   ew_tree_parameters parameters = tree_parameters(resolution, plain);
   parameters.highest_redshift = redshift + 1.1 * rise;
@@ -321,8 +321,8 @@ static void assert_same_mean(const sample *coarse, const sample *fine, double bi
 static void test_independence_of_resolution(void **state) {
   (void)state;
   forest_look coarse = {0}, fine = {0};
-  look_at_forest(&coarse, 1e7, 8000, 0);
-  look_at_forest(&fine, 1e6, 3000, 100000);
+  look_at_forest(&coarse, 1e7, 20000, 0);
+  look_at_forest(&fine, 1e6, 6000, 100000);
   for (int z = 0; z < LOOK_REDSHIFTS; z++)
     for (int k = 0; k < LOOK_BINS; k++)
       assert_same_mean(&coarse.progenitors[z][k], &fine.progenitors[z][k], look_bias[k], "progenitors",
