@@ -36,14 +36,14 @@ typedef struct {
   double critical_metallicity; /* log10 of Z over solar: stars below are first stars */
   double imf_slope;            /* dN/dm ~ m^-slope */
   double imf_range[2];         /* Msun */
-  double burst_mass;           /* Msun formed at a time, mean */
+  double burst_mass;           /* Msun: stars are drawn until their masses reach it */
   double collapse_mass;        /* Msun: above (and below pair instability) a star collapses whole */
   double binding_factor;       /* gas is lost if the energy exceeds this times its binding energy */
   double recovery_range[2];    /* Gyr */
 } ew_first_star_parameters;
 
 typedef struct {
-  double delay;                /* Gyr before gas joins the disc, at the least */
+  double delay;                /* Gyr: e-folding time in which gas joins the disc, at the least */
   double return_time;          /* Gyr, of ejected gas at 1e10 Msun */
   double return_velocity;      /* km/s: below it ejected gas is lost after reionization */
   bool external_enrichment;    /* gas from outside may carry metals */
@@ -59,7 +59,7 @@ typedef struct {
   double cluster_range[2]; /* Msun */
   double cluster_slope;
   double cluster_efficiency; /* stars over gas of the cloud that makes the cluster */
-  double heated_time;        /* Gyr that the rest of the cloud stays unavailable */
+  double heated_time;        /* Gyr: e-folding time in which the rest of the cloud is available again */
   double star_by_star_mass;  /* Msun: supernovae of clusters below are drawn star by star */
 } ew_star_formation_parameters;
 
@@ -82,7 +82,7 @@ typedef struct {
   bool merger_growth;
   double orbital_share;   /* f of the merger energy balance */
   double binding_share;   /* c of the same */
-  double smallest_merger; /* mass ratio below which mergers are left out of the growth */
+  double smallest_merger; /* mass ratio at infall below which starless haloes are left out */
 } ew_size_parameters;
 
 typedef struct {
@@ -255,7 +255,7 @@ void ew_ledger_move_mass(ew_ledger *ledger, ew_reservoir from, ew_reservoir to, 
 double ew_ledger_mass(const ew_ledger *ledger, ew_reservoir reservoir);
 void ew_ledger_add(ew_ledger *ledger, const ew_ledger *other); /* at a merger */
 
-/* Largest |sum over reservoirs| of an element over what came in or was made of it: 0 to rounding. */
+/* Largest |sum over reservoirs| of an element over the sum of their absolute values: 0 to rounding. */
 double ew_ledger_imbalance(const ew_ledger *ledger);
 
 /* ----------------------------------------------------------------------------------------------------------------

@@ -6,6 +6,8 @@
 #include <math.h>
 #include <string.h>
 
+#define LEAST_DISTURBANCE 0.01 /* energy over that which empties the halo */
+
 static size_t ring_size(const ew_calendar *calendar) {
   return (size_t)ceil(EW_PENDING_SPAN / calendar->step) + 2;
 }
@@ -29,6 +31,7 @@ static ew_deaths *entry(ew_galaxy *galaxy, size_t slot) {
 static void add_deaths(ew_deaths *to, const ew_deaths *from) {
   to->count += from->count;
   to->energy += from->energy;
+  to->first_star_count += from->first_star_count;
   to->first_star_energy += from->first_star_energy;
   for (int i = 0; i < EW_ELEMENT_COUNT; i++) {
     to->ejected.mass[i] += from->ejected.mass[i];
@@ -61,7 +64,10 @@ static ew_deaths deaths_of(const ew_dying *dying) {
   const ew_death *death = &dying->death;
   bool explodes = death->energy > 0.0;
   ew_deaths deaths = {.count = explodes ? dying->number : 0.0, .energy = dying->number * death->energy};
-  deaths.first_star_energy = dying->first_star ? deaths.energy : 0.0;
+  if (dying->first_star) {
+    deaths.first_star_count = deaths.count;
+    deaths.first_star_energy = deaths.energy;
+  }
   for (int i = 0; i < EW_ELEMENT_COUNT; i++) {
     deaths.ejected.mass[i] = dying->number * death->ejected * dying->fraction->mass[i];
     deaths.remnant.mass[i] = dying->number * death->remnant * dying->fraction->mass[i];
@@ -90,14 +96,17 @@ static double binding_energy(const ew_step *step) {
   return gas * step->environment->virial_velocity * step->environment->virial_velocity;
 }
 
-/* First-star explosions either empty the halo or keep its gas hot for a while. */
+/* First-star explosions either empty the halo or keep its gas hot for a while. A massive halo, which such a galaxy may
+ * have merged with, does not notice. */
 static void disturb_gas(ew_step *step, double energy) {
   const ew_first_star_parameters *p = &step->environment->model->first_stars;
   ew_galaxy *galaxy = step->galaxy;
   ew_ledger *ledger = &galaxy->ledger;
   double ratio = energy * EW_SUPERNOVA_ENERGY / fmax(binding_energy(step), 1e-300);
-  ew_ledger_move_share(ledger, EW_DISC_GAS, EW_HEATED_GAS, 1.0);
   double part = fmin(ratio / p->binding_factor, 1.0);
+  if (part < LEAST_DISTURBANCE)
+    return;
+  ew_ledger_move_share(ledger, EW_DISC_GAS, EW_HEATED_GAS, 1.0);
   double wait = p->recovery_range[0] + part * (p->recovery_range[1] - p->recovery_range[0]);
   galaxy->recovers_at = fmax(galaxy->recovers_at, step->end + wait);
   if (ratio <= p->binding_factor)
@@ -135,7 +144,7 @@ void ew_explode_supernovae(ew_step *step) {
   enrich(galaxy, &due);
   if (due.first_star_energy > 0.0)
     disturb_gas(step, due.first_star_energy);
-  step->supernovae += due.count;
+  step->supernovae += due.count - due.first_star_count;
   step->energy += due.energy - due.first_star_energy;
 }
 

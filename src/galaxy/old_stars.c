@@ -13,6 +13,7 @@ typedef struct {
   ew_step *step;
   ew_reservoir gas;
   double ia_mean;
+  ew_draw_purpose purpose;
 } ageing;
 
 static void move_formed(const ageing *work, const ew_cohort *cohort, ew_reservoir to, double mass) {
@@ -43,7 +44,7 @@ static void age_cohort(ageing *work, ew_cohort *cohort) {
 static void explode_ia(ageing *work) {
   ew_ledger *ledger = &work->step->galaxy->ledger;
   const ew_composition *ejecta = ew_ia_ejecta(work->step->environment->world->stars);
-  ew_stream stream = ew_step_stream(work->step, EW_PROCESS_BURSTS, EW_DRAW_IA);
+  ew_stream stream = ew_step_stream(work->step, EW_PROCESS_BURSTS, work->purpose);
   double one = ew_composition_mass(ejecta);
   double held = ew_ledger_mass(ledger, EW_REMNANTS) + ew_ledger_mass(ledger, EW_LIVING_STARS);
   double count = fmin((double)ew_draw_poisson(&stream, work->ia_mean), floor(held / one));
@@ -64,7 +65,7 @@ static void explode_ia(ageing *work) {
 }
 
 void ew_age_stars(ew_step *step, bool keep_gas, bool all) {
-  ageing work = {step, keep_gas ? EW_DISC_GAS : EW_LOST_GAS, 0.0};
+  ageing work = {step, keep_gas ? EW_DISC_GAS : EW_LOST_GAS, 0.0, all ? EW_DRAW_IA_SETTLED : EW_DRAW_IA};
   for (size_t i = 0; i < step->galaxy->cohort_count; i++) {
     ew_cohort *cohort = &step->galaxy->cohort[i];
     if (!(cohort->mass > 0.0))

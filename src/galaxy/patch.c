@@ -20,22 +20,18 @@ static double draw_streaming(double rms, ew_stream *stream) {
   return sqrt(sum);
 }
 
-static double threshold_at(const ew_model *model, const ew_calendar *calendar, size_t slot, double streaming) {
+/* Once the patch is ionized, molecules help no more. */
+static double threshold_at(const ew_patch *patch, const ew_model *model, const ew_calendar *calendar, size_t slot) {
   double atomic = calendar->atomic_mass[slot], z = calendar->redshift[slot];
-  if (model->first_stars.threshold != EW_FIRST_STARS_MOLECULAR)
+  if (model->first_stars.threshold != EW_FIRST_STARS_MOLECULAR || z < patch->reionization_redshift)
     return atomic;
   double background = model->first_stars.background * ew_lyman_werner_background(z);
-  return fmin(atomic, ew_molecular_threshold(z, background, streaming));
+  return fmin(atomic, ew_molecular_threshold(z, background, patch->streaming_velocity));
 }
 
-/* Once molecules help no more they never do again: the background only grows. */
 static void fill_thresholds(ew_patch *patch, const ew_model *model, const ew_calendar *calendar) {
-  bool molecular = true;
-  for (size_t k = 0; k < calendar->slot_count; k++) {
-    double atomic = calendar->atomic_mass[k];
-    patch->threshold_mass[k] = molecular ? threshold_at(model, calendar, k, patch->streaming_velocity) : atomic;
-    molecular = patch->threshold_mass[k] < atomic || calendar->redshift[k] > LATEST_REIONIZATION;
-  }
+  for (size_t k = 0; k < calendar->slot_count; k++)
+    patch->threshold_mass[k] = threshold_at(patch, model, calendar, k);
 }
 
 static void fill_characteristic_mass(ew_patch *patch, const ew_model *model, const ew_calendar *calendar,

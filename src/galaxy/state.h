@@ -51,7 +51,8 @@ typedef struct {
 /* Deaths of massive stars that fall into one slot. */
 typedef struct {
   double count;
-  double energy;            /* 1e51 erg */
+  double energy; /* 1e51 erg */
+  double first_star_count;
   double first_star_energy; /* the part from first stars */
   ew_composition ejected;   /* leaves living stars for the gas */
   ew_composition remnant;   /* leaves living stars for remnants */
@@ -112,7 +113,14 @@ static inline bool ew_step_reionized(const ew_step *step) {
 }
 
 /* Several streams of one process in one slot, apart from each other. */
-typedef enum { EW_DRAW_CLUSTERS, EW_DRAW_SUPERNOVAE, EW_DRAW_IA, EW_DRAW_MIXING, EW_DRAW_PURPOSES } ew_draw_purpose;
+typedef enum {
+  EW_DRAW_CLUSTERS,
+  EW_DRAW_SUPERNOVAE,
+  EW_DRAW_IA,
+  EW_DRAW_IA_SETTLED,
+  EW_DRAW_MIXING,
+  EW_DRAW_PURPOSES
+} ew_draw_purpose;
 ew_stream ew_step_stream(const ew_step *step, ew_process process, ew_draw_purpose purpose);
 
 /* Supernovae enrich the gas; a share of the gas leaves; how many supernovae the gas's metals stem from, effectively. */

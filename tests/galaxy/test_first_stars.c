@@ -232,7 +232,7 @@ static void strong_explosions_empty_the_halo(void **state) {
 static void weak_explosions_delay_recovery(void **state) {
   stage *s = minihalo(state);
   double v = s->environment.virial_velocity, limit = PAIR_ENERGY / (2.0 * v * v) - 1e4;
-  for (double excess = 1.01; excess < 200.0; excess *= 5.0) {
+  for (double excess = 1.01; excess < 80.0; excess *= 5.0) {
     double at = 0.0;
     ew_galaxy *galaxy = after_explosion(s, 200.0, excess * limit, &at);
     assert_close(mass_in(galaxy, EW_HALO_GAS), excess * limit, 1e-9);
@@ -241,6 +241,14 @@ static void weak_explosions_delay_recovery(void **state) {
     double part = PAIR_ENERGY / (2.0 * v * v * (1e4 + excess * limit));
     assert_close(galaxy->recovers_at, at + 0.01 + 0.09 * part, 1e-5);
   }
+}
+
+/* The limit is a hundredth of the energy that empties the halo. */
+static void massive_haloes_do_not_notice(void **state) {
+  stage *s = minihalo(state);
+  double v = s->environment.virial_velocity, limit = PAIR_ENERGY / (2.0 * v * v) - 1e4, at = 0.0;
+  const ew_galaxy *galaxy = after_explosion(s, 200.0, 150.0 * limit, &at);
+  assert_true(galaxy->recovers_at < at + 0.01);
 }
 
 int main(void) {
@@ -256,6 +264,7 @@ int main(void) {
       cmocka_unit_test(low_mass_stars_do_not_die),
       cmocka_unit_test(strong_explosions_empty_the_halo),
       cmocka_unit_test(weak_explosions_delay_recovery),
+      cmocka_unit_test(massive_haloes_do_not_notice),
   };
   return cmocka_run_group_tests(tests, open_stage, close_stage);
 }

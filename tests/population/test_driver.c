@@ -4,6 +4,8 @@
  * early end on a whole tree. */
 #include "ensemble.h"
 
+#include <sys/resource.h>
+
 enum { COUNT = 60, SLICE_FIRST = 7, SLICE_COUNT = 20, STOP_AFTER = 10 };
 
 /* Small trees, so that threads overtake each other all the time; members make the number of rows vary. */
@@ -215,6 +217,35 @@ static void used_memory_gives_the_same_rows_as_fresh(void **state) {
   ew_evolution_free(NULL);
 }
 
+/* Kilobytes that the process has held at most. */
+static long most_memory(void) {
+  struct rusage usage;
+  assert_int_equal(getrusage(RUSAGE_SELF, &usage), 0);
+  return usage.ru_maxrss;
+}
+
+/* Once a tree has been evolved, many more realizations on it take no more memory. */
+static void memory_does_not_grow_with_realizations(void **state) {
+  const ew_laboratory *laboratory = *state;
+  const long little = 4096;
+  ew_tree_memory *memory = ew_tree_memory_new();
+  ew_evolution *evolution = ew_evolution_new();
+  harvest h = evolve_one(laboratory, 0, memory, evolution);
+  ew_draws draws = {.seed = 1};
+  for (long before = 0, i = 0; i < 200; i++) {
+    ew_error error = {0};
+    draws.realization[EW_PROCESS_BURSTS] = (uint64_t)i;
+    need_success(ew_evolution_run(evolution, &laboratory->settings.model, &draws, &error), &error);
+    if (i == 50)
+      before = most_memory();
+    if (i > 50 && EW_SLOWNESS == 1)
+      assert_true(most_memory() - before < little);
+  }
+  free_harvest(&h);
+  ew_evolution_free(evolution);
+  ew_tree_memory_free(memory);
+}
+
 /* ------------------------------------------------------------------------------------------------------- early ends */
 
 /* A sink that raises the flag, or fails, once it has taken so many trees. */
@@ -359,6 +390,7 @@ int main(void) {
       cmocka_unit_test(no_trees_is_a_run_too),
       cmocka_unit_test(a_tree_replayed_alone_gives_its_rows),
       cmocka_unit_test(used_memory_gives_the_same_rows_as_fresh),
+      cmocka_unit_test(memory_does_not_grow_with_realizations),
       cmocka_unit_test(a_stopped_run_leaves_a_whole_prefix),
       cmocka_unit_test(a_run_stopped_before_it_starts_does_nothing),
       cmocka_unit_test(a_flag_raised_with_the_last_tree_is_no_failure),

