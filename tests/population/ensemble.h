@@ -63,7 +63,7 @@ static inline ew_laboratory *laboratory_with(const char *const *assignments) {
 
 #define LABORATORY(...) laboratory_with((const char *const[]){__VA_ARGS__, NULL})
 
-/* ------------------------------------------------------------------------------------------------------------ rows */
+/* ------------------------------------------------------------------------------------------------------------- rows */
 
 /* Everything that a run handed over. */
 typedef struct {

@@ -11,8 +11,7 @@ enum { LABORATORIES = 6, PER_LABORATORY = EW_TREES(52) };
 
 #define ROUNDING 1e-10 /* of the turnover: what a long run of additions may lose */
 
-/* ------------------------------------------------------------------------------------------------- random parameters
- */
+/* ------------------------------------------------------------------------------------------------ random parameters */
 
 static double between(ew_stream *stream, double low, double high) {
   double u = ew_draw_uniform(stream);
@@ -69,8 +68,7 @@ static ew_laboratory *random_laboratory(uint64_t number) {
   return laboratory_of(&settings);
 }
 
-/* ------------------------------------------------------------------------------------------------------------ ledger
- */
+/* ----------------------------------------------------------------------------------------------------------- ledger */
 
 static double inflow(const ew_ledger *ledger) {
   return -ew_ledger_mass(ledger, EW_OUTSIDE);
@@ -111,8 +109,7 @@ static void check_supply(const ew_evolution *evolution, const ew_ledger *ledger)
     assert_true(fabs(baryons - most) <= ROUNDING * most);
 }
 
-/* ------------------------------------------------------------------------------------------------------------- stars
- */
+/* ------------------------------------------------------------------------------------------------------------ stars */
 
 static void check_books(const ew_galaxy *galaxy) {
   double events = 0.0, components = 0.0, cohorts = 0.0;
@@ -150,8 +147,7 @@ static void check_galaxies(const ew_evolution *evolution) {
   }
 }
 
-/* -------------------------------------------------------------------------------------------------------------- rows
- */
+/* ------------------------------------------------------------------------------------------------------------- rows */
 
 static void check_row_of(const ew_galaxy_row *row, const ew_galaxy *galaxy) {
   double stars = ew_ledger_mass(&galaxy->ledger, EW_LIVING_STARS) + ew_ledger_mass(&galaxy->ledger, EW_REMNANTS);
@@ -184,8 +180,7 @@ static void check_tree_row(const ew_tree_row *tree, const ew_laboratory *laborat
   assert_true(tree->branches >= 1 && tree->nodes >= tree->branches);
 }
 
-/* ------------------------------------------------------------------------------------------------------------- tests
- */
+/* ------------------------------------------------------------------------------------------------------------ tests */
 
 typedef struct {
   ew_laboratory *laboratory;

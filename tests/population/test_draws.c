@@ -97,7 +97,7 @@ static void a_process_redrawn_changes_its_part(void **state) {
   free_harvest(&base);
 }
 
-/* ------------------------------------------------------------------------------------------------- without scatter */
+/* -------------------------------------------------------------------------------------------------- without scatter */
 
 typedef struct {
   ew_process process;
@@ -166,7 +166,7 @@ static void mixing_leaves_masses_and_sizes(void **state) {
   free_harvest(&other);
 }
 
-/* ---------------------------------------------------------------------------------------------------- realizations */
+/* ----------------------------------------------------------------------------------------------------- realizations */
 
 /* The second realization of a run is the first of a run in which all processes but roots and assembly are redrawn. */
 static void a_realization_redraws_all_but_the_tree(void **state) {

@@ -150,70 +150,79 @@ static void no_trees_is_a_run_too(void **state) {
   free_harvest(&h);
 }
 
-/* ------------------------------------------------------------------------------------------------------------ replay
- */
+/* ----------------------------------------------------------------------------------------------------------- replay */
+
+/* One thread's memory, and the tree that it holds. */
+typedef struct {
+  ew_tree_memory *memory;
+  ew_evolution *evolution;
+  ew_tree tree;
+} workplace;
+
+static workplace make_workplace(void) {
+  workplace w = {.memory = ew_tree_memory_new(), .evolution = ew_evolution_new()};
+  assert_true(w.memory && w.evolution);
+  return w;
+}
+
+static void clear_workplace(workplace *w) {
+  ew_evolution_free(w->evolution);
+  ew_tree_memory_free(w->memory);
+}
+
+static void load_tree(workplace *w, const ew_laboratory *laboratory, uint64_t number) {
+  ew_draws draws = {.seed = (uint64_t)laboratory->settings.random.seed, .tree = number};
+  ew_root root = ew_root_draw(&laboratory->settings, &draws);
+  ew_error error = {0};
+  need_success(ew_tree_grow(laboratory->builder, &root, &draws, w->memory, &w->tree, &error), &error);
+  need_success(ew_evolution_load(w->evolution, laboratory, &w->tree, &error), &error);
+}
+
+static const ew_galaxy_row *realize(workplace *w, const ew_laboratory *laboratory, uint64_t realization,
+                                    size_t *count) {
+  ew_draws draws = {.seed = (uint64_t)laboratory->settings.random.seed, .tree = w->tree.number};
+  for (int p = EW_PROCESS_ASSEMBLY + 1; p < EW_PROCESS_COUNT; p++)
+    draws.realization[p] = realization;
+  ew_error error = {0};
+  need_success(ew_evolution_run(w->evolution, &laboratory->settings.model, &draws, &error), &error);
+  return ew_evolution_rows(w->evolution, count);
+}
 
 /* Any galaxy can be had alone: its tree, its realization, nothing before. */
 static void a_tree_replayed_alone_gives_its_rows(void **state) {
-  const ew_laboratory *laboratory = *state;
-  ew_plan plan = plan_of(laboratory);
+  ew_plan plan = plan_of(*state);
   harvest all = harvest_of(&plan);
   for (uint64_t number = 0; number < COUNT; number += 11) {
-    ew_tree_memory *memory = ew_tree_memory_new();
-    ew_evolution *evolution = ew_evolution_new();
-    ew_draws draws = {.seed = (uint64_t)laboratory->settings.random.seed, .tree = number};
-    ew_root root = ew_root_draw(&laboratory->settings, &draws);
-    ew_tree tree;
-    ew_error error = {0};
-    need_success(ew_tree_grow(laboratory->builder, &root, &draws, memory, &tree, &error), &error);
-    need_success(ew_evolution_load(evolution, laboratory, &tree, &error), &error);
-    for (int p = EW_PROCESS_ASSEMBLY + 1; p < EW_PROCESS_COUNT; p++)
-      draws.realization[p] = 1;
-    need_success(ew_evolution_run(evolution, &laboratory->settings.model, &draws, &error), &error);
-    assert_memory_equal(ew_evolution_tree_row(evolution), &all.trees[number], sizeof *all.trees);
+    workplace w = make_workplace();
+    load_tree(&w, *state, number);
     size_t count, i = rows_before(&all, number);
-    const ew_galaxy_row *rows = ew_evolution_rows(evolution, &count);
+    const ew_galaxy_row *rows = realize(&w, *state, 1, &count);
+    assert_memory_equal(ew_evolution_tree_row(w.evolution), &all.trees[number], sizeof *all.trees);
     while (all.rows[i].realization == 0)
       i++;
     assert_memory_equal(rows, all.rows + i, count * sizeof *rows);
-    ew_evolution_free(evolution);
-    ew_tree_memory_free(memory);
+    clear_workplace(&w);
   }
   free_harvest(&all);
 }
 
-static harvest evolve_one(const ew_laboratory *laboratory, uint64_t number, ew_tree_memory *memory,
-                          ew_evolution *evolution) {
-  harvest h = {0};
-  ew_draws draws = {.seed = 1, .tree = number};
-  ew_root root = ew_root_draw(&laboratory->settings, &draws);
-  ew_tree tree;
-  ew_error error = {0};
-  size_t count;
-  need_success(ew_tree_grow(laboratory->builder, &root, &draws, memory, &tree, &error), &error);
-  need_success(ew_evolution_load(evolution, laboratory, &tree, &error), &error);
-  need_success(ew_evolution_run(evolution, &laboratory->settings.model, &draws, &error), &error);
-  const ew_galaxy_row *rows = ew_evolution_rows(evolution, &count);
-  need_success(keep_rows(&h, ew_evolution_tree_row(evolution), rows, count, &error), &error);
-  return h;
-}
-
 /* Memory that has held other trees, larger and smaller, leaves no trace. */
 static void used_memory_gives_the_same_rows_as_fresh(void **state) {
-  ew_tree_memory *used_memory = ew_tree_memory_new();
-  ew_evolution *used = ew_evolution_new();
+  workplace used = make_workplace();
   for (uint64_t number = 0; number < COUNT; number += 3) {
-    ew_tree_memory *memory = ew_tree_memory_new();
-    ew_evolution *fresh = ew_evolution_new();
-    harvest a = evolve_one(*state, number, used_memory, used), b = evolve_one(*state, number, memory, fresh);
-    assert_same_harvest(&a, &b);
-    free_harvest(&a);
-    free_harvest(&b);
-    ew_evolution_free(fresh);
-    ew_tree_memory_free(memory);
+    workplace fresh = make_workplace();
+    load_tree(&used, *state, number);
+    load_tree(&fresh, *state, number);
+    size_t count, fresh_count;
+    const ew_galaxy_row *rows = realize(&used, *state, 0, &count);
+    const ew_galaxy_row *fresh_rows = realize(&fresh, *state, 0, &fresh_count);
+    assert_int_equal(count, fresh_count);
+    assert_memory_equal(rows, fresh_rows, count * sizeof *rows);
+    assert_memory_equal(ew_evolution_tree_row(used.evolution), ew_evolution_tree_row(fresh.evolution),
+                        sizeof(ew_tree_row));
+    clear_workplace(&fresh);
   }
-  ew_evolution_free(used);
-  ew_tree_memory_free(used_memory);
+  clear_workplace(&used);
   ew_evolution_free(NULL);
 }
 
@@ -224,26 +233,23 @@ static long most_memory(void) {
   return usage.ru_maxrss;
 }
 
-/* Once a tree has been evolved, many more realizations on it take no more memory. */
+/* Once trees have been evolved, many more realizations on them take no more memory. */
 static void memory_does_not_grow_with_realizations(void **state) {
-  const ew_laboratory *laboratory = *state;
-  const long little = 4096;
-  ew_tree_memory *memory = ew_tree_memory_new();
-  ew_evolution *evolution = ew_evolution_new();
-  harvest h = evolve_one(laboratory, 0, memory, evolution);
-  ew_draws draws = {.seed = 1};
-  for (long before = 0, i = 0; i < 200; i++) {
-    ew_error error = {0};
-    draws.realization[EW_PROCESS_BURSTS] = (uint64_t)i;
-    need_success(ew_evolution_run(evolution, &laboratory->settings.model, &draws, &error), &error);
-    if (i == 50)
-      before = most_memory();
-    if (i > 50 && EW_SLOWNESS == 1)
-      assert_true(most_memory() - before < little);
+  const long little = 2048;
+  workplace w = make_workplace();
+  long before = 0;
+  for (uint64_t realizations = 2; realizations <= 64 / EW_SLOWNESS; realizations *= 32) {
+    before = most_memory();
+    for (uint64_t number = 0; number < 10; number++) {
+      load_tree(&w, *state, number);
+      size_t count;
+      for (uint64_t r = 0; r < realizations; r++)
+        realize(&w, *state, r, &count);
+    }
   }
-  free_harvest(&h);
-  ew_evolution_free(evolution);
-  ew_tree_memory_free(memory);
+  if (EW_SLOWNESS == 1)
+    assert_true(most_memory() - before < little);
+  clear_workplace(&w);
 }
 
 /* ------------------------------------------------------------------------------------------------------- early ends */

@@ -11,8 +11,7 @@
       "output.members=true"
 #define ROUNDING 1e-12
 
-/* ------------------------------------------------------------------------------------------------------------- trees
- */
+/* ------------------------------------------------------------------------------------------------------------ trees */
 
 enum { MOST_BRANCHES = 8, MOST_NODES = 64 };
 
@@ -73,8 +72,7 @@ static ew_tree tree_of(draft *d, uint64_t number) {
   return tree;
 }
 
-/* ---------------------------------------------------------------------------------------------------------- evolving
- */
+/* --------------------------------------------------------------------------------------------------------- evolving */
 
 typedef struct {
   ew_laboratory *laboratory;
@@ -166,8 +164,7 @@ static size_t slot_at(const stage *s, double redshift) {
   return ew_calendar_slot(&s->laboratory->calendar, ew_age(s->laboratory->cosmology, redshift));
 }
 
-/* ------------------------------------------------------------------------------------------------ a satellite's life
- */
+/* ----------------------------------------------------------------------------------------------- a satellite's life */
 
 enum { SATELLITE, HOST };
 
@@ -245,8 +242,7 @@ static void a_more_massive_satellite_counts_as_an_equal(void **state) {
   assert_int_equal(s->rows[0].observed.luminous_mergers, 1);
 }
 
-/* -------------------------------------------------------------------------------------------------------- dark haloes
- */
+/* ------------------------------------------------------------------------------------------------------ dark haloes */
 
 /* Too small to cool gas by atoms, yet more than a twentieth of its host. */
 static void draft_dark_pair(stage *s, double dark_mass) {
@@ -286,8 +282,7 @@ static void a_tiny_dark_halo_only_brings_its_gas(void **state) {
   assert_null(member_of_branch(s, SATELLITE));
 }
 
-/* ------------------------------------------------------------------------------------------------ members of members
- */
+/* ----------------------------------------------------------------------------------------------- members of members */
 
 enum { INNER, OUTER, ROOT };
 
@@ -353,8 +348,7 @@ static void a_member_merges_with_a_member(void **state) {
   assert_true(merged > 0);
 }
 
-/* ------------------------------------------------------------------------------------------------------ late joiners
- */
+/* ----------------------------------------------------------------------------------------------------- late joiners */
 
 /* A branch joins its host in the very slot in which the host falls in. */
 static void a_late_joiner_comes_along(void **state) {
@@ -403,8 +397,7 @@ static void a_chain_within_one_slot_comes_along(void **state) {
   assert_int_equal(s->count, 1);
 }
 
-/* ---------------------------------------------------------------------------------------------------- short branches
- */
+/* --------------------------------------------------------------------------------------------------- short branches */
 
 static void a_branch_of_one_node_brings_its_gas(void **state) {
   stage *s = *state;
@@ -445,8 +438,7 @@ static void a_root_of_one_node_is_a_galaxy_of_its_last_slot(void **state) {
   assert_true(s->rows[0].formation_redshift == 0.0);
 }
 
-/* --------------------------------------------------------------------------------------------------------- last slot
- */
+/* -------------------------------------------------------------------------------------------------------- last slot */
 
 static void check_last_slot(stage *s, double redshift) {
   s->draft = (draft){.branches = 0};
@@ -479,8 +471,7 @@ static void a_root_may_stand_at_any_redshift(void **state) {
   assert_int_equal(s->count, 1);
 }
 
-/* ------------------------------------------------------------------------------------------------ what imports bring
- */
+/* ----------------------------------------------------------------------------------------------- what imports bring */
 
 /* Haloes that lose mass keep what they took in; the peak is kept beside the last mass. */
 static void a_halo_may_lose_mass(void **state) {
