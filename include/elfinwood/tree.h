@@ -70,7 +70,8 @@ typedef struct ew_tree_memory ew_tree_memory;
 ew_tree_memory *ew_tree_memory_new(void); /* NULL when memory is short */
 void ew_tree_memory_free(ew_tree_memory *memory);
 
-/* Grows the tree of a root with the draws' `assembly` stream. The tree lies in `memory` until the next call with it. */
+/* Grows the tree of a root with the draws' `assembly` stream. The tree lies in `memory` until the next call with it. It
+ * does not depend on the builder's largest mass; a lower highest redshift only cuts it. */
 EW_CHECKED ew_status ew_tree_grow(const ew_tree_builder *builder, const ew_root *root, const ew_draws *draws,
                                   ew_tree_memory *memory, ew_tree *tree, ew_error *error);
 
