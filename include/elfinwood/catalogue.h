@@ -24,8 +24,7 @@ extern const size_t ew_galaxy_column_count;
 extern const ew_column ew_tree_columns[];
 extern const size_t ew_tree_column_count;
 
-/* ---------------------------------------------------------------------------------------------------------------
- * writer */
+/* ---------------------------------------------------------------------------------------------------------- writer */
 
 typedef struct ew_catalogue ew_catalogue;
 
@@ -52,8 +51,7 @@ uint64_t ew_catalogue_kept(ew_catalogue *catalogue);
 EW_CHECKED ew_status ew_spectrum_write(const ew_spectrum *spectrum, const char *path, const char *parameter_text,
                                        ew_error *error);
 
-/* --------------------------------------------------------------------------------------------------------------
- * summary */
+/* --------------------------------------------------------------------------------------------------------- summary */
 
 /* Collects what the closing tables need while rows pass by, in memory that does not grow with their number. Only
  * central galaxies count, each with its weight. Quantiles are good to 0.004 dex or better (time_90: 5 Myr). */

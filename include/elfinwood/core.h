@@ -53,8 +53,9 @@ void ew_core_start(void);
 /* The program version, e.g. "0.1.0". */
 const char *ew_version(void);
 
-/* --------------------------------------------------------------------------------------------------------- constants
- * CODATA 2018 and IAU 2015 nominal values, in the library's units. */
+/* ------------------------------------------------------------------------------------------------------- constants */
+
+/* CODATA 2018 and IAU 2015 nominal values, in the library's units. */
 
 #define EW_GRAVITY          4.300917270e-6    /* G [kpc km^2/s^2/Msun]: GM_sun of IAU 2015 B3, parsec of IAU 2015 B2 */
 #define EW_KMS_IN_KPC_GYR   1.022712165045695 /* 1 km/s in kpc/Gyr, Julian year */
@@ -66,8 +67,9 @@ const char *ew_version(void);
 #define EW_SUPERNOVA_ENERGY 5.02914422e7      /* 1e51 erg [Msun km^2/s^2] */
 #define EW_PI               3.14159265358979323846
 
-/* -------------------------------------------------------------------------------------------------------------- arena
- * Memory that is handed out in pieces and taken back all at once. Pointers stay valid until the arena is reset past
+/* ----------------------------------------------------------------------------------------------------------- arena */
+
+/* Memory that is handed out in pieces and taken back all at once. Pointers stay valid until the arena is reset past
  * them or freed. Not thread-safe: one per thread. */
 
 typedef struct ew_arena ew_arena;
@@ -85,8 +87,9 @@ void *ew_arena_take(ew_arena *arena, size_t size);
 ew_arena_mark ew_arena_tell(const ew_arena *arena);
 void ew_arena_return(ew_arena *arena, ew_arena_mark mark); /* everything taken since `mark` is free again */
 
-/* ------------------------------------------------------------------------------------------------------ random streams
- * Counter-based: Philox4x64-10 (Salmon et al. 2011, SC11) of Random123. The key is (seed, process), the counter (tree
+/* -------------------------------------------------------------------------------------------------- random streams */
+
+/* Counter-based: Philox4x64-10 (Salmon et al. 2011, SC11) of Random123. The key is (seed, process), the counter (tree
  * number, realization of that process, branch key, slot and draw within the slot), so no draw depends on how many were
  * made elsewhere. */
 
@@ -139,8 +142,7 @@ uint64_t ew_branch_key_root(void);
 uint64_t ew_branch_key_child(uint64_t parent_key, uint64_t ordinal);
 uint64_t ew_branch_key_imported(int64_t identifier);
 
-/* ----------------------------------------------------------------------------------------------- tables on uniform
- * grids */
+/* ----------------------------------------------------------------------------------------- tables on uniform grids */
 
 /* value[i] at first + i step. Look-ups need no search. */
 typedef struct {
@@ -171,9 +173,10 @@ static inline double ew_table_at(const ew_table *table, double x) {
   return table->value[i] + w * (table->value[i + 1] - table->value[i]);
 }
 
-/* ------------------------------------------------------------------------------------------------------------
- * parameters A parameter is declared once, as a row beside the process that uses it. The engine parses (libconfig files
- * and key=value), validates, prints, echoes in a form that runs again, and knows the range for priors. */
+/* ------------------------------------------------------------------------------------------------------ parameters */
+
+/* A parameter is declared once, as a row beside the process that uses it. The engine parses (libconfig files and
+ * key=value), validates, prints, echoes in a form that runs again, and knows the range for priors. */
 
 typedef enum {
   EW_REAL,    /* double; integers are accepted */
@@ -269,8 +272,7 @@ char *ew_parameters_echo(const ew_parameter_values *values);
 /* Every parameter for people: name, unit, default, range or choices, meaning, source. */
 void ew_parameters_print(const ew_parameter_table *table, FILE *out);
 
-/* --------------------------------------------------------------------------------------------------------------
- * progress */
+/* -------------------------------------------------------------------------------------------------------- progress */
 
 typedef struct {
   bool shown;       /* false: every call is a no-op */

@@ -42,8 +42,7 @@ typedef struct {
 extern const ew_parameter ew_cosmology_rows[];
 extern const ew_parameter ew_spectrum_rows[];
 
-/* ------------------------------------------------------------------------------------------------------------
- * background */
+/* ------------------------------------------------------------------------------------------------------ background */
 
 typedef struct ew_cosmology ew_cosmology;
 
@@ -81,8 +80,7 @@ double ew_redshift_of_barrier(const ew_cosmology *cosmology, double barrier);
 /* Virial overdensity with respect to the critical density at z: Bryan & Norman 1998, ApJ 495, 80, eq. 6. */
 double ew_virial_overdensity(const ew_cosmology *cosmology, double redshift);
 
-/* -------------------------------------------------------------------------------------------------- spectrum and
- * variance */
+/* ------------------------------------------------------------------------------------------- spectrum and variance */
 
 /* A transfer function by name. `evaluate` gives T(k), k in 1/Mpc, T -> 1 for k -> 0. */
 typedef struct {
@@ -124,8 +122,7 @@ double ew_sigma_slope(const ew_spectrum *spectrum, double mass);
 EW_CHECKED ew_status ew_sigma_integrate(const ew_spectrum *spectrum, double mass, double *sigma, double *slope,
                                         ew_error *error);
 
-/* ----------------------------------------------------------------------------------------------------------- mass
- * functions */
+/* -------------------------------------------------------------------------------------------------- mass functions */
 
 /* dn/dlnM [comoving Mpc^-3] of haloes. */
 typedef struct {
@@ -148,9 +145,5 @@ typedef struct {
 } ew_progenitor_question;
 double ew_progenitor_number(const ew_spectrum *spectrum, const ew_progenitor_question *question, double mass);
 double ew_progenitor_fraction_above(const ew_spectrum *spectrum, const ew_progenitor_question *question, double mass);
-
-/* --------------------------------------------------------------------------------------------------------- spectrum
- * file Writes the HDF5 file /background, /power, /variance, /mass_function: see the catalogue room (ew_spectrum_write).
- */
 
 #endif

@@ -12,8 +12,7 @@
 #include "elfinwood/halo.h"
 #include "elfinwood/stars.h"
 
-/* ------------------------------------------------------------------------------------------------- parameters by
- * process */
+/* ------------------------------------------------------------------------------------------- parameters by process */
 
 typedef enum { EW_SUPPRESSION_NONE, EW_SUPPRESSION_CHARACTERISTIC_MASS } ew_suppression_choice;
 
@@ -133,8 +132,7 @@ extern const ew_parameter ew_satellite_rows[];
 /* Checks between parameters of the model: EW_REFUSED, and the name of the parameter at fault in *name. */
 EW_CHECKED ew_status ew_model_check(const ew_model *model, const char **name, ew_error *error);
 
-/* ------------------------------------------------------------------------------------------------- world, calendar,
- * patch */
+/* ------------------------------------------------------------------------------------------ world, calendar, patch */
 
 /* Immutable tables shared by all models and threads; borrowed. */
 typedef struct {
@@ -204,8 +202,7 @@ ew_branch_luck ew_branch_luck_draw(const ew_model *model, const ew_draws *draws,
 /* The same redshift of enrichment alone, for branches of which nothing else is asked. */
 double ew_enrichment_redshift_draw(const ew_draws *draws, uint64_t branch_key);
 
-/* ------------------------------------------------------------------------------------------------------------
- * environment */
+/* ----------------------------------------------------------------------------------------------------- environment */
 
 typedef struct {
   const ew_world *world;
@@ -223,8 +220,7 @@ typedef struct {
 /* The halo part of an environment for a mass at its slot and redshift. */
 void ew_environment_set_halo(ew_environment *environment, double mass, double concentration_factor);
 
-/* ----------------------------------------------------------------------------------------------------------------
- * ledger */
+/* ---------------------------------------------------------------------------------------------------------- ledger */
 
 typedef enum {
   EW_OUTSIDE,     /* where inflow comes from: negative */
@@ -258,8 +254,7 @@ void ew_ledger_add(ew_ledger *ledger, const ew_ledger *other); /* at a merger */
 /* Largest |sum over reservoirs| of an element over the sum of their absolute values: 0 to rounding. */
 double ew_ledger_imbalance(const ew_ledger *ledger);
 
-/* ----------------------------------------------------------------------------------------------------------------
- * galaxy */
+/* ---------------------------------------------------------------------------------------------------------- galaxy */
 
 typedef struct ew_galaxy ew_galaxy;
 
@@ -307,8 +302,7 @@ typedef struct {
 EW_CHECKED ew_status ew_galaxy_merge(ew_galaxy *host, ew_galaxy *satellite, const ew_merger *merger,
                                      const ew_environment *environment, ew_error *error);
 
-/* ------------------------------------------------------------------------------------------------------ what is
- * observed */
+/* ------------------------------------------------------------------------------------------------ what is observed */
 
 /* All in the catalogue's units; NaN where it has no meaning. */
 typedef struct {

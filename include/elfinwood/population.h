@@ -9,8 +9,7 @@
 
 #include <signal.h>
 
-/* -------------------------------------------------------------------------------------------------------------
- * settings */
+/* -------------------------------------------------------------------------------------------------------- settings */
 
 typedef enum { EW_ROOTS_SINGLE, EW_ROOTS_RANGE } ew_root_choice;
 
@@ -57,8 +56,7 @@ const ew_process_record *const *ew_processes(size_t *count);
 /* Checks between parameters (values holds an ew_settings); EW_REFUSED with one line. */
 EW_CHECKED ew_status ew_settings_check(const ew_parameter_values *values, ew_error *error);
 
-/* --------------------------------------------------------------------------------------------------------------- roots
- */
+/* ----------------------------------------------------------------------------------------------------------- roots */
 
 /* Root number draws->tree, from stream `roots`: it does not depend on how many are asked for. */
 ew_root ew_root_draw(const ew_settings *settings, const ew_draws *draws);
@@ -66,8 +64,7 @@ ew_root ew_root_draw(const ew_settings *settings, const ew_draws *draws);
 /* The largest mass that ew_root_draw can give. */
 double ew_roots_largest_mass(const ew_settings *settings);
 
-/* -------------------------------------------------------------------------------------------------------------- tables
- */
+/* ---------------------------------------------------------------------------------------------------------- tables */
 
 /* What a run needs besides its models, built once: cosmology, spectrum, split, concentration and stellar tables and the
  * calendar. */
@@ -85,8 +82,7 @@ typedef struct {
 EW_CHECKED ew_status ew_laboratory_new(ew_laboratory **laboratory, const ew_settings *settings, ew_error *error);
 void ew_laboratory_free(ew_laboratory *laboratory);
 
-/* ---------------------------------------------------------------------------------------------------------------- rows
- */
+/* ------------------------------------------------------------------------------------------------------------ rows */
 
 /* One galaxy of one realization: a row of /galaxies. */
 typedef struct {
@@ -120,8 +116,7 @@ typedef struct {
   void *context;
 } ew_row_sink;
 
-/* -------------------------------------------------------------------------------------------------------------- driver
- */
+/* ---------------------------------------------------------------------------------------------------------- driver */
 
 typedef struct {
   const ew_laboratory *laboratory;
@@ -131,17 +126,19 @@ typedef struct {
   uint64_t realization_offset[EW_PROCESS_COUNT]; /* added to each process's realization number */
   int threads;                                   /* 0: as many as OpenMP offers */
   bool progress;                                 /* a line on stderr if that is a terminal */
-  const volatile sig_atomic_t *stop;             /* non-zero: finish what is begun, then return; may be NULL */
+  const volatile sig_atomic_t *stop;             /* non-zero: drop the trees under way and return; may be NULL */
 } ew_plan;
 
+/* What a run that was stopped says. */
+#define EW_INTERRUPTED "interrupted"
+
 /* Grows each tree once and evolves it under every model and realization. Rows do not depend on the number of threads.
- * Memory is bounded by a window of trees and the largest tree per thread. *done counts trees handed to the sink.
- * EW_FAILED "interrupted" when stopped; the sink then holds a whole prefix. */
+ * Memory is bounded by a window of trees (shorter when each gives many rows) and the largest tree per thread. *done
+ * counts trees handed to the sink. EW_FAILED "interrupted" when stopped; the sink then holds a whole prefix. */
 EW_CHECKED ew_status ew_run(const ew_plan *plan, const ew_row_sink *sink, uint64_t *done, ew_error *error);
 
-/* Evolves one tree for one realization under one model; rows go to `rows` (capacity `room`), how many to *count. With
- * `ledger`, the sum of all galaxies' ledgers in the tree is added to it (for tests of conservation). */
-typedef struct ew_evolution ew_evolution; /* memory for it: one per thread */
+/* Memory for the evolution of one tree at a time: one per thread. */
+typedef struct ew_evolution ew_evolution;
 ew_evolution *ew_evolution_new(void);
 void ew_evolution_free(ew_evolution *evolution);
 
@@ -153,6 +150,8 @@ EW_CHECKED ew_status ew_evolution_run(ew_evolution *evolution, const ew_model *m
 const ew_tree_row *ew_evolution_tree_row(const ew_evolution *evolution);
 /* The rows of the last run: the central, then bound members if the settings ask for them. */
 const ew_galaxy_row *ew_evolution_rows(const ew_evolution *evolution, size_t *count);
+/* Makes runs return EW_FAILED, EW_INTERRUPTED as soon as *stop is not 0; NULL: never. */
+void ew_evolution_heed(ew_evolution *evolution, const volatile sig_atomic_t *stop);
 /* Adds up the ledgers of all galaxies alive at the end of the last run. */
 void ew_evolution_ledger(const ew_evolution *evolution, ew_ledger *ledger);
 

@@ -37,6 +37,7 @@ const char *ew_element_name(ew_element element); /* "carbon" */
 
 /* Solar mass fractions: Asplund et al. 2009, ARA&A 47, 481 (photosphere, X = 0.7381, Z = 0.0134). */
 extern const ew_composition ew_solar;
+#define EW_SOLAR_METALS 0.0134
 
 /* Primordial mass fractions: hydrogen and helium only (Y = 0.2470, Planck 2018 VI). */
 extern const ew_composition ew_primordial;

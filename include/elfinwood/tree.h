@@ -53,10 +53,11 @@ typedef struct {
 /* Group "trees". */
 extern const ew_parameter ew_tree_rows[];
 
-/* --------------------------------------------------------------------------------------------------------------
- * builder Binary splits by extended Press-Schechter with the correction of Parkinson, Cole & Helly 2008, MNRAS 383,
- * 557, in the limit of vanishing step: waiting times between splits are drawn from the exact hazard along the smooth
- * drift of the mass. With split_amplitude 1 and both slopes 0 it is plain extended Press-Schechter. */
+/* --------------------------------------------------------------------------------------------------------- builder */
+
+/* Binary splits by extended Press-Schechter with the correction of Parkinson, Cole & Helly 2008, MNRAS 383, 557, in the
+ * limit of vanishing step: waiting times between splits are drawn from the exact hazard along the smooth drift of the
+ * mass. With split_amplitude 1 and both slopes 0 it is plain extended Press-Schechter. */
 
 typedef struct ew_tree_builder ew_tree_builder;
 
@@ -80,8 +81,7 @@ EW_CHECKED ew_status ew_tree_grow(const ew_tree_builder *builder, const ew_root 
 double ew_split_rate(const ew_tree_builder *builder, double mass, double barrier);
 double ew_smooth_rate(const ew_tree_builder *builder, double mass, double barrier);
 
-/* ------------------------------------------------------------------------------------------------------ looking at
- * trees */
+/* ------------------------------------------------------------------------------------------------ looking at trees */
 
 /* Mass of a branch at a redshift, linear between its nodes; 0 before its first node, the last mass after its last. */
 double ew_branch_mass(const ew_tree *tree, const ew_branch *branch, double redshift);
@@ -93,8 +93,7 @@ double ew_formation_redshift(const ew_tree *tree, const ew_branch *branch, doubl
 /* Checks every rule at the head of this page; EW_REFUSED with the branch at fault otherwise. */
 EW_CHECKED ew_status ew_tree_check(const ew_tree *tree, ew_error *error);
 
-/* ------------------------------------------------------------------------------------------------------------ tree
- * file */
+/* ------------------------------------------------------------------------------------------------------- tree file */
 
 typedef struct ew_tree_file ew_tree_file;
 

@@ -3,6 +3,8 @@
  * Stopping: the signals that ask for it, and what is told when a job did not finish. */
 #include "cli/cli.h"
 
+#include <string.h>
+
 /* A signal handler can reach nothing else. */
 static volatile sig_atomic_t stop_wanted;
 
@@ -26,7 +28,7 @@ void ew_stop_on_signals(void) {
 ew_status ew_fail_unfinished(const ew_error *failure, const char *output, uint64_t kept, uint64_t total,
                              ew_error *error) {
   unsigned long long there = kept, wanted = total;
-  if (stop_wanted)
+  if (stop_wanted && strcmp(failure->message, EW_INTERRUPTED) == 0)
     return ew_fail(error, EW_FAILED, "interrupted after %llu of %llu trees; kept in %s.partial", there, wanted, output);
   return ew_fail(error, failure->status, "%s; %llu of %llu trees kept in %s.partial", failure->message, there, wanted,
                  output);

@@ -72,7 +72,7 @@ static ew_status grow_all(nursery *trees, ew_error *error) {
   for (uint64_t first = 0; first < total && status == EW_OK; first += trees->seat_count) {
     uint64_t left = total - first;
     if (*ew_stop_flag())
-      return ew_fail(error, EW_FAILED, "interrupted");
+      return ew_fail(error, EW_FAILED, EW_INTERRUPTED);
     status = grow_batch(trees, first, left < trees->seat_count ? (size_t)left : trees->seat_count, error);
   }
   return status;

@@ -86,6 +86,8 @@ void ew_schedule_death(ew_step *step, const ew_dying *dying) {
   turn_to(galaxy, e->slot);
   double time = 0.5 * (step->start + step->end) + dying->age;
   size_t slot = (size_t)(time / e->calendar->step);
+  if (slot < galaxy->pending_slot)
+    slot = galaxy->pending_slot; /* those of this slot have exploded already */
   ew_deaths deaths = deaths_of(dying);
   add_deaths(entry(galaxy, slot), &deaths);
 }

@@ -34,8 +34,9 @@ const ew_parameter ew_feedback_rows[] = {
      .standard = "0.1",
      .low = 0,
      .high = 1,
-     .meaning = "share of supernova energy that lifts gas: sets the most that can leave",
-     .source = "energy loading of resolved winds, about 0.1: Kim et al. 2020, ApJ 900, 61, from memory"},
+     .meaning = "share of the energy of supernovae (2.5e51 erg in the mean, as half of the heaviest are hypernovae) "
+                "that lifts gas; below 40 km/s this, not the loading law, sets the wind",
+     .source = "own choice: resolved winds carry some 0.1 of 1e51 erg (Kim et al. 2020, ApJ 900, 61, from memory)"},
     {.name = "feedback.metal_loading",
      .type = EW_REAL,
      .offset = ROW(metal_loading),

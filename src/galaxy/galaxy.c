@@ -5,8 +5,8 @@
 
 #include <math.h>
 
-#define NEGLIGIBLE_GAS 1.0 /* Msun: a galaxy with less, and no supply, is idle */
-#define SHUT_OFF_SHARE 0.5 /* of the mean baryons: haloes that may hold less count as cut off from supply */
+#define NEGLIGIBLE_GAS  1.0 /* Msun: a galaxy with less, and no supply, is idle */
+#define LEAST_GAS_SHARE 0.1 /* of the stellar mass: galaxies with less gas count as cut off */
 
 ew_world ew_world_of(const ew_cosmology *cosmology, const ew_concentration *concentration, const ew_stars *stars) {
   const double metal_poor = 1e-3;
@@ -104,8 +104,10 @@ void ew_galaxy_dissolve(ew_galaxy *host, ew_galaxy *satellite) {
   ew_galaxy_fall_in(host, satellite);
 }
 
+/* After reionization, only galaxies with gas to mix it with keep the gas that their stars give back. */
 static bool keeps_stellar_gas(const ew_step *step) {
-  return !ew_step_reionized(step) || (!step->environment->satellite && step->share >= SHUT_OFF_SHARE);
+  const ew_galaxy *galaxy = step->galaxy;
+  return !ew_step_reionized(step) || ew_gas_in_galaxy(galaxy) > LEAST_GAS_SHARE * ew_stellar_mass(galaxy);
 }
 
 static double gas_within_reach(const ew_galaxy *galaxy) {
@@ -131,8 +133,6 @@ static void fall_idle(ew_step *step) {
 void ew_galaxy_settle(ew_galaxy *galaxy, const ew_environment *environment) {
   double now = ew_calendar_end_of(environment->calendar, environment->slot);
   ew_step step = {.galaxy = galaxy, .environment = environment, .start = now, .end = now};
-  step.share = ew_baryon_share(&environment->model->reionization, environment->halo.mass,
-                               environment->patch->characteristic_mass[environment->slot]);
   ew_age_stars(&step, !galaxy->idle && keeps_stellar_gas(&step), true);
 }
 
@@ -147,12 +147,12 @@ ew_status ew_galaxy_advance(ew_galaxy *galaxy, const ew_environment *environment
   galaxy->idle = false;
   ew_evaporate_gas(&step);
   ew_cycle_gas(&step);
-  ew_form_stars(&step);
   ew_explode_supernovae(&step);
   ew_age_stars(&step, keeps_stellar_gas(&step), false);
   ew_respond_slowly(&step);
   ew_blow_wind(&step);
   ew_respond_fast(&step);
+  ew_form_stars(&step);
   if (falls_idle(&step))
     fall_idle(&step);
   return step.short_of_memory ? ew_fail_memory(error, "a galaxy") : EW_OK;

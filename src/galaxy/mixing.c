@@ -46,6 +46,7 @@ const ew_process_record ew_mixing_process = {
     .rows = ew_mixing_rows,
 };
 
+#define LARGEST_TAKE        0.5 /* of what the gas has of a metal, by one cluster */
 #define HIGHEST_METAL_SHARE 0.5 /* of a cluster's mass, however the draw falls */
 
 /* A factor of that scatter in dex whose mean is 1. */
@@ -83,6 +84,22 @@ double ew_effective_supernovae(const ew_galaxy *galaxy) {
   return galaxy->held_squares > 0.0 ? fmax(galaxy->held * galaxy->held / galaxy->held_squares, 1.0) : 1.0;
 }
 
+/* The factor, at most 1, that keeps a cluster from taking more than a share of what the gas has of any metal. */
+static double within_reach(const ew_composition *gas, const ew_composition *fraction, double cluster_mass) {
+  double factor = 1.0;
+  for (int i = EW_HELIUM + 1; i < EW_ELEMENT_COUNT; i++)
+    if (fraction->mass[i] * cluster_mass > LARGEST_TAKE * gas->mass[i])
+      factor = fmin(factor, LARGEST_TAKE * gas->mass[i] / (fraction->mass[i] * cluster_mass));
+  return factor;
+}
+
+/* Normal stars have at least the metals below which first stars would form; 0 where none do. */
+static double critical_metals(const ew_model *model) {
+  if (model->first_stars.threshold == EW_FIRST_STARS_NONE)
+    return 0.0;
+  return EW_SOLAR_METALS * pow(10.0, model->first_stars.critical_metallicity);
+}
+
 void ew_mix_cluster(const ew_step *step, ew_stream *stream, double cluster_mass, ew_composition *fraction) {
   const ew_mixing_parameters *p = &step->environment->model->mixing;
   const ew_composition *gas = &step->galaxy->ledger.in[EW_DISC_GAS];
@@ -91,10 +108,14 @@ void ew_mix_cluster(const ew_step *step, ew_stream *stream, double cluster_mass,
   double common = mean_one_factor(scatter, ew_draw_normal(stream));
   for (int i = 0; i < EW_ELEMENT_COUNT; i++) {
     fraction->mass[i] = gas->mass[i] / mass;
-    if (i <= EW_HELIUM)
-      continue;
-    fraction->mass[i] *= common * mean_one_factor(p->element_scatter, ew_draw_normal(stream));
-    fraction->mass[i] = fmin(fraction->mass[i], gas->mass[i] / cluster_mass);
+    if (i > EW_HELIUM)
+      fraction->mass[i] *= common * mean_one_factor(p->element_scatter, ew_draw_normal(stream));
   }
+  double factor = within_reach(gas, fraction, cluster_mass);
+  double least = critical_metals(step->environment->model), metals = factor * ew_composition_metals(fraction);
+  if (metals > 0.0 && metals < least)
+    factor *= least / metals;
+  for (int i = EW_HELIUM + 1; i < EW_ELEMENT_COUNT; i++)
+    fraction->mass[i] *= factor;
   fill_up(fraction);
 }

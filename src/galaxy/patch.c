@@ -6,9 +6,15 @@
 
 #include <math.h>
 
+const ew_process_record ew_structure_process = {
+    .name = "structure",
+    .meaning = "concentration and spin of haloes with their scatter",
+    .source = "Diemer & Joyce 2019, ApJ 871, 168; Bullock et al. 2001, ApJ 555, 240",
+    .rows = ew_structure_rows,
+};
+
 #define EARLIEST_REIONIZATION 20.0
 #define LATEST_REIONIZATION   5.0
-#define SOLAR_METALS          0.0134 /* Asplund et al. 2009 */
 
 /* Streaming speed: three Gaussian components of equal rms (Tseliakhovich & Hirata 2010, PRD 82, 083520). */
 static double draw_streaming(double rms, ew_stream *stream) {
@@ -76,8 +82,8 @@ ew_branch_luck ew_branch_luck_draw(const ew_model *model, const ew_draws *draws,
   luck.enrichment_redshift = enrichment_redshift(&stream);
   luck.concentration_factor = pow(10.0, s->concentration_scatter * ew_draw_normal(&stream));
   luck.spin = s->spin_median * exp(s->spin_scatter * ew_draw_normal(&stream));
-  luck.external_metals =
-      SOLAR_METALS * pow(10.0, model->gas.external_metallicity + model->gas.external_scatter * ew_draw_normal(&stream));
-  luck.external_metals = fmin(luck.external_metals, SOLAR_METALS);
+  luck.external_metals = EW_SOLAR_METALS * pow(10.0, model->gas.external_metallicity +
+                                                         model->gas.external_scatter * ew_draw_normal(&stream));
+  luck.external_metals = fmin(luck.external_metals, EW_SOLAR_METALS);
   return luck;
 }

@@ -25,13 +25,6 @@ const ew_process_record ew_satellite_process = {
     .rows = ew_satellite_rows,
 };
 
-const ew_process_record ew_structure_process = {
-    .name = "structure",
-    .meaning = "concentration and spin of haloes with their scatter",
-    .source = "Diemer & Joyce 2019, ApJ 871, 168; Bullock et al. 2001, ApJ 555, 240",
-    .rows = ew_structure_rows,
-};
-
 double ew_sinking_time(const ew_environment *host, double satellite_mass, uint64_t satellite_branch, uint64_t ordinal) {
   ew_stream stream = ew_stream_open(host->draws, EW_PROCESS_ORBITS, satellite_branch, ordinal);
   double u_circularity = ew_draw_uniform(&stream), u_radius = ew_draw_uniform(&stream);

@@ -102,8 +102,7 @@ const ew_process_record ew_star_formation_process = {
     .rows = ew_star_formation_rows,
 };
 
-#define SOLAR_METALS       0.0134 /* Asplund et al. 2009 */
-#define PRESSURE_OF_COLUMN 33.12  /* (pi G/2) (1 Msun/pc^2)^2 / k [K cm^-3] */
+#define PRESSURE_OF_COLUMN 33.12 /* (pi G/2) (1 Msun/pc^2)^2 / k [K cm^-3] */
 #define KPC2_IN_PC2        1e6
 #define HEAVIEST_STAR      100.0 /* Msun, of the normal IMF */
 #define MANY_CLUSTERS      8.0   /* expected in a step: more are drawn by classes of mass */
@@ -332,7 +331,7 @@ void ew_form_stars(ew_step *step) {
     return;
   double metals = ew_composition_metals(&galaxy->ledger.in[EW_DISC_GAS]) / gas;
   if (model->first_stars.threshold != EW_FIRST_STARS_NONE &&
-      metals < SOLAR_METALS * pow(10.0, model->first_stars.critical_metallicity)) {
+      metals < EW_SOLAR_METALS * pow(10.0, model->first_stars.critical_metallicity)) {
     ew_form_first_stars(step);
     return;
   }

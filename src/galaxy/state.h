@@ -134,7 +134,8 @@ double ew_stellar_mass(const ew_galaxy *galaxy);  /* living stars and remnants, 
 /* Half-mass radius of the gas disc, from spin [kpc]. */
 double ew_disc_half_mass_radius(const ew_galaxy *galaxy, const ew_environment *environment);
 
-/* Brings the stars of a galaxy that was idle up to the end of the slot. */
+/* Brings all stars of a galaxy up to the end of the slot, before it merges, wakes or is observed. What explodes on the
+ * way, at most 0.1 Gyr late in a galaxy that has gas, gives metals but no wind. */
 void ew_galaxy_settle(ew_galaxy *galaxy, const ew_environment *environment);
 
 /* ----------------------------------------------------------------------------- processes, in the order in which they

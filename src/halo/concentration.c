@@ -4,7 +4,7 @@
  *
  * The relation is known for M200c; for each virial mass on the grid the M200c that converts to it is found by
  * iteration. ln c is held on a uniform grid in ln M and ln(1+z) and interpolated linearly in both. */
-#include "diemer_joyce.h"
+#include "halo/diemer_joyce.h"
 
 #include <math.h>
 #include <stdlib.h>
@@ -56,11 +56,11 @@ static inline double axis_place(const grid_axis *axis, double x, size_t *index) 
 
 /* ln c_vir of a virial mass. The ratio of the two masses hardly depends on mass, so scaling M200c by the miss gains two
  * digits at each turn; *ratio = M200c/M_vir is the first guess and the answer. */
-static ew_status log_virial_concentration(const diemer_joyce_epoch *epoch, double mass, double overdensity,
+static ew_status log_virial_concentration(const ew_diemer_joyce_epoch *epoch, double mass, double overdensity,
                                           double *ratio, double *log_c, ew_error *error) {
   for (int i = 0; i < MASS_LIMIT; i++) {
     ew_mass_conversion to_virial = {.mass = *ratio * mass, .overdensity = 200.0, .wanted = overdensity};
-    ew_status status = diemer_joyce_concentration(epoch, to_virial.mass, &to_virial.concentration, error);
+    ew_status status = ew_diemer_joyce_concentration(epoch, to_virial.mass, &to_virial.concentration, error);
     if (status != EW_OK)
       return status;
     double c;
@@ -76,7 +76,7 @@ static ew_status log_virial_concentration(const diemer_joyce_epoch *epoch, doubl
 static ew_status fill_epoch(ew_concentration *table, const ew_spectrum *spectrum, size_t index, ew_error *error) {
   double redshift = expm1(axis_value(&table->epoch, index));
   double overdensity = ew_virial_overdensity(ew_spectrum_cosmology(spectrum), redshift);
-  diemer_joyce_epoch epoch = diemer_joyce_at(spectrum, redshift);
+  ew_diemer_joyce_epoch epoch = ew_diemer_joyce_at(spectrum, redshift);
   double ratio = 1.0;
   for (size_t i = 0; i < MASSES; i++) {
     ew_status status = log_virial_concentration(&epoch, exp(axis_value(&table->mass, i)), overdensity, &ratio,

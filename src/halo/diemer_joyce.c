@@ -12,7 +12,7 @@
  * 2 A B^(-1/2), at nu = B^(1/2), which is more than 1.5 times the minimum of G for every n between -3 and 5. That is
  * also why the relation itself has a floor, c/C_a = 2.1 as n goes to -3 and 3.7 at n = -2. Past nu of about 3 it turns
  * up and goes on rising; beyond 6 or so it is an extrapolation about haloes that do not exist. */
-#include "diemer_joyce.h"
+#include "halo/diemer_joyce.h"
 
 #include <math.h>
 
@@ -31,9 +31,9 @@
 #define NEWTON_STEP  1e-9
 #define NEWTON_LIMIT 100
 
-diemer_joyce_epoch diemer_joyce_at(const ew_spectrum *spectrum, double redshift) {
+ew_diemer_joyce_epoch ew_diemer_joyce_at(const ew_spectrum *spectrum, double redshift) {
   const ew_cosmology *cosmology = ew_spectrum_cosmology(spectrum);
-  return (diemer_joyce_epoch){
+  return (ew_diemer_joyce_epoch){
       .spectrum = spectrum,
       .barrier = COLLAPSE_THRESHOLD / ew_growth(cosmology, redshift),
       .growth_factor = 1.0 - C_A * (1.0 - ew_growth_rate(cosmology, redshift)),
@@ -61,8 +61,8 @@ static bool invert(double target, double slope, double *c) {
   return false;
 }
 
-ew_status diemer_joyce_concentration(const diemer_joyce_epoch *epoch, double mass_200c, double *concentration,
-                                     ew_error *error) {
+ew_status ew_diemer_joyce_concentration(const ew_diemer_joyce_epoch *epoch, double mass_200c, double *concentration,
+                                        ew_error *error) {
   double slope = effective_slope(epoch->spectrum, mass_200c);
   double nu = epoch->barrier / ew_sigma(epoch->spectrum, mass_200c);
   double a = A0 * (1.0 + A1 * (slope + 3.0));
@@ -82,6 +82,6 @@ ew_status ew_concentration_200c(const ew_spectrum *spectrum, double mass_200c, d
                    EW_HIGHEST_MASS);
   if (!(redshift >= 0.0 && redshift <= EW_HIGHEST_REDSHIFT))
     return ew_fail(error, EW_REFUSED, "concentration at redshift %g: outside 0 to %g", redshift, EW_HIGHEST_REDSHIFT);
-  diemer_joyce_epoch epoch = diemer_joyce_at(spectrum, redshift);
-  return diemer_joyce_concentration(&epoch, mass_200c, concentration, error);
+  ew_diemer_joyce_epoch epoch = ew_diemer_joyce_at(spectrum, redshift);
+  return ew_diemer_joyce_concentration(&epoch, mass_200c, concentration, error);
 }

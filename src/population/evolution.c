@@ -114,7 +114,13 @@ static ew_status wake(ew_evolution *evolution, size_t index, size_t waking, ew_e
   return status;
 }
 
+void ew_evolution_heed(ew_evolution *evolution, const volatile sig_atomic_t *stop) {
+  evolution->stop = stop;
+}
+
 static ew_status evolve_branch(ew_evolution *evolution, size_t index, ew_error *error) {
+  if (evolution->stop && *evolution->stop)
+    return ew_fail(error, EW_FAILED, EW_INTERRUPTED);
   size_t waking = ew_waking_slot(evolution, index);
   ew_count_baryons(evolution, index, waking);
   return waking != EW_NEVER ? wake(evolution, index, waking, error) : EW_OK;

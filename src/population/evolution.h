@@ -18,7 +18,7 @@ typedef struct ew_member {
   struct ew_member *bound_to; /* the member that it orbits; NULL: the central */
   ew_galaxy *galaxy;          /* NULL: starless */
   ew_nfw halo;                /* at infall */
-  double mass_ratio;          /* to the host, at infall */
+  double mass_ratio;          /* to what it orbits, when it began to */
   double sinks_at;            /* Gyr */
   const ew_branch *branch;
   uint64_t infalls; /* ordinal of the next orbit draw */
@@ -49,6 +49,7 @@ struct ew_evolution {
   ew_arena_mark after_skeleton;
   ew_tree_row row;
   /* of the realization under way */
+  const volatile sig_atomic_t *stop;
   const ew_model *model;
   const ew_draws *draws;
   ew_patch patch;

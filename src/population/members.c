@@ -110,6 +110,7 @@ static void hand_on_members(const ew_environment *host, ew_household *home, cons
     if (m->bound_to != gone)
       continue;
     m->bound_to = gone->bound_to;
+    m->mass_ratio = m->halo.mass / host->halo.mass;
     set_orbit(host, m, now);
   }
 }

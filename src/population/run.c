@@ -5,12 +5,13 @@
  * window, so memory is bounded whatever the ensemble's size. */
 #include "elfinwood/population.h"
 
+#include <math.h>
 #include <omp.h>
 #include <pthread.h>
 #include <stdlib.h>
 #include <string.h>
 
-enum { WINDOW_PER_THREAD = 16 };
+enum { WINDOW_PER_THREAD = 16, WINDOW_ROWS = 1 << 18 }; /* whichever is less, but a tree for each thread */
 
 /* Rows of a finished tree that wait for their turn. */
 typedef struct {
@@ -66,7 +67,7 @@ static void fail(crew *c, const ew_error *error) {
 static ew_status append(result *to, const ew_galaxy_row *rows, size_t count, size_t model, size_t realization,
                         ew_error *error) {
   if (to->count + count > to->capacity) {
-    size_t capacity = 2 * (to->count + count);
+    size_t capacity = to->capacity + to->capacity / 2 + count;
     ew_galaxy_row *moved = realloc(to->rows, capacity * sizeof *moved);
     if (!moved)
       return ew_fail_memory(error, "rows");
@@ -135,7 +136,7 @@ static void write_ready(crew *c) {
     c->writing = false;
     if (status != EW_OK) {
       (void)ew_fail(&error, status, "the rows of tree %lld could not be handed on", (long long)next->tree.tree);
-      c->error = error;
+      c->error = c->error.status == EW_OK ? error : c->error;
     } else {
       next->ready = false;
       c->next_written++;
@@ -163,6 +164,7 @@ static void work(crew *c, worker *w) {
 static void work_in_thread(crew *c) {
   worker w = {ew_tree_memory_new(), ew_evolution_new()};
   if (w.memory && w.evolution) {
+    ew_evolution_heed(w.evolution, c->plan->stop);
     work(c, &w);
   } else {
     ew_error error = {0};
@@ -180,13 +182,19 @@ static ew_status outcome(const crew *c, ew_error *error) {
     return c->error.status;
   }
   if (c->next_written < c->plan->tree_count)
-    return ew_fail(error, EW_FAILED, "interrupted");
+    return ew_fail(error, EW_FAILED, EW_INTERRUPTED);
   return EW_OK;
+}
+
+static size_t window_size(const ew_plan *plan, int threads) {
+  double rows_per_tree = (double)plan->model_count * (double)plan->laboratory->settings.ensemble.realizations;
+  double size = fmin((double)threads * WINDOW_PER_THREAD, WINDOW_ROWS / rows_per_tree);
+  return (size_t)fmax(size, (double)threads);
 }
 
 ew_status ew_run(const ew_plan *plan, const ew_row_sink *sink, uint64_t *done, ew_error *error) {
   int threads = plan->threads > 0 ? plan->threads : omp_get_max_threads();
-  crew c = {.plan = plan, .sink = sink, .window_size = (size_t)threads * WINDOW_PER_THREAD};
+  crew c = {.plan = plan, .sink = sink, .window_size = window_size(plan, threads)};
   *done = 0;
   c.window = calloc(c.window_size, sizeof *c.window);
   if (!c.window)

@@ -90,7 +90,7 @@ static const ew_parameter ensemble_rows[] = {
      .unit = "Gyr",
      .standard = "0.01",
      .low = 0.002,
-     .high = 0.05,
+     .high = 0.02,
      .meaning = "width of a slot of the cosmic-time grid",
      .source = "own choice: short against the life of a star of 8 Msun"},
     {.name = NULL},
@@ -158,9 +158,25 @@ static ew_status check_roots(const ew_parameter_values *values, const ew_setting
   return EW_OK;
 }
 
+static ew_status check_densities(const ew_parameter_values *values, const ew_settings *settings, ew_error *error) {
+  const ew_cosmology_parameters *c = &settings->cosmology;
+  if (!(c->omega_baryon <= c->omega_matter))
+    return ew_parameters_refuse(values, "cosmology.omega_baryon", error, "exceeds cosmology.omega_matter = %g",
+                                c->omega_matter);
+  ew_error reason = {0};
+  ew_cosmology *cosmology = NULL;
+  ew_status status = ew_cosmology_new(&cosmology, c, &reason);
+  ew_cosmology_free(cosmology);
+  if (status == EW_REFUSED)
+    return ew_parameters_refuse(values, "cosmology.omega_matter", error, "%s", reason.message);
+  return status == EW_OK ? EW_OK : ew_fail(error, status, "%s", reason.message);
+}
+
 ew_status ew_settings_check(const ew_parameter_values *values, ew_error *error) {
   const ew_settings *settings = values->target;
-  ew_status status = check_roots(values, settings, error);
+  ew_status status = check_densities(values, settings, error);
+  if (status == EW_OK)
+    status = check_roots(values, settings, error);
   if (status != EW_OK)
     return status;
   if (!(settings->stars.supernova_mass < settings->stars.collapse_mass))

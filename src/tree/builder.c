@@ -205,7 +205,9 @@ ew_status ew_tree_grow(const ew_tree_builder *builder, const ew_root *root, cons
   while (room && ew_tree_memory_pop(memory, &walk))
     room = ew_tree_memory_open_branch(memory, &walk) && walk_branch(t, &walk, draws, memory);
   if (!room)
-    return ew_fail_memory(error, "a merger tree");
+    return ew_fail(error, EW_FAILED,
+                   "no room for the tree of root %llu, %g Msun; a higher trees.resolution_mass needs less",
+                   (unsigned long long)root->number, root->mass);
   ew_tree_memory_finish(memory, root, tree);
   return EW_OK;
 }

@@ -50,6 +50,7 @@ static void draw_model(ew_model *model, ew_stream *stream) {
   draw_group(ew_structure_rows, &model->structure, stream);
   draw_group(ew_reionization_rows, &model->reionization, stream);
   draw_group(ew_first_star_rows, &model->first_stars, stream);
+  model->first_stars.burst_mass = fmin(model->first_stars.burst_mass, 1e3); /* as many stars as a burst has room for */
   draw_group(ew_gas_rows, &model->gas, stream);
   draw_group(ew_star_formation_rows, &model->star_formation, stream);
   draw_group(ew_feedback_rows, &model->feedback, stream);

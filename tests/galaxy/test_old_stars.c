@@ -154,30 +154,32 @@ static void no_explosion_without_a_white_dwarf(void **state) {
 }
 
 /* Where what old stars give back ends up, for a galaxy of stars of 100 Myr. */
-static bool keeps_gas(stage *s, double redshift, double halo_mass, bool satellite) {
+static bool keeps_gas(stage *s, double redshift, double gas, bool satellite) {
   ew_galaxy *galaxy = stage_galaxy(s);
   stage_at(s, redshift);
   stage_slot(s, s->environment.slot - 10);
   put_stars(s, galaxy, FORMED, METALS);
   stage_slot(s, s->environment.slot + 10);
-  stage_halo(s, halo_mass);
+  stage_halo(s, 1e9);
   s->environment.satellite = satellite;
+  if (gas > 0.0)
+    put_gas(s, galaxy, EW_DISC_GAS, gas, METALS);
   ew_galaxy_settle(galaxy, &s->environment);
-  double kept = mass_in(galaxy, EW_DISC_GAS), lost = mass_in(galaxy, EW_LOST_GAS);
+  double kept = mass_in(galaxy, EW_DISC_GAS) - gas, lost = mass_in(galaxy, EW_LOST_GAS);
   assert_true((kept > 0.0) != (lost > 0.0));
   return kept > 0.0;
 }
 
-/* It joins the disc, but leaves where the supply is shut off after reionization: in satellites, and in haloes that may
- * hold less than half of the mean, those below the characteristic mass. */
-static void gas_of_old_stars_leaves_where_supply_is_shut_off(void **state) {
+/* It joins the disc, but leaves after reionization where there is no gas to mix with: less than a tenth of the stars.
+ */
+static void gas_of_old_stars_leaves_where_there_is_none(void **state) {
   stage *s = stage_fresh(state);
-  double critical = s->patch.characteristic_mass[s->calendar.slot_count - 1];
-  assert_true(keeps_gas(s, 10.0, 1e7, false));
-  assert_true(keeps_gas(s, 10.0, 1e7, true));
-  assert_true(keeps_gas(s, 0.0, 1.01 * critical, false));
-  assert_false(keeps_gas(s, 0.0, 0.99 * critical, false));
-  assert_false(keeps_gas(s, 0.0, 1.01 * critical, true));
+  assert_true(keeps_gas(s, 10.0, 0.0, false));
+  assert_true(keeps_gas(s, 10.0, 0.0, true));
+  assert_false(keeps_gas(s, 0.0, 0.0, false));
+  assert_false(keeps_gas(s, 0.0, 0.04 * FORMED, false));
+  assert_true(keeps_gas(s, 0.0, 0.12 * FORMED, false));
+  assert_true(keeps_gas(s, 0.0, 0.12 * FORMED, true));
 }
 
 /* Cohorts of the same age join as if they had been one. */
@@ -217,7 +219,7 @@ int main(void) {
       cmocka_unit_test(ia_supernovae_go_off_as_the_delay_times_say),
       cmocka_unit_test(metals_are_conserved_in_ia_supernovae),
       cmocka_unit_test(no_explosion_without_a_white_dwarf),
-      cmocka_unit_test(gas_of_old_stars_leaves_where_supply_is_shut_off),
+      cmocka_unit_test(gas_of_old_stars_leaves_where_there_is_none),
       cmocka_unit_test(cohorts_join_at_mergers),
       cmocka_unit_test(ia_supernovae_count_for_winds_where_gas_stays),
   };

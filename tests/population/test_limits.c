@@ -92,7 +92,7 @@ static void the_shortest_and_the_longest_step_run(void **state) {
   harvest shortest = HARVEST("roots.kind=single", "roots.mass=3e9", "roots.count=6", "trees.resolution_mass=3e6",
                              "ensemble.time_step=0.002");
   harvest longest = HARVEST("roots.kind=single", "roots.mass=3e9", "roots.count=6", "trees.resolution_mass=3e6",
-                            "ensemble.time_step=0.05");
+                            "ensemble.time_step=0.02");
   for (size_t i = 0; i < shortest.row_count; i++) {
     assert_true(shortest.rows[i].observed.luminosity_v > 0.0 && longest.rows[i].observed.luminosity_v > 0.0);
     assert_true(shortest.rows[i].halo_mass == longest.rows[i].halo_mass);
