@@ -179,9 +179,6 @@ ew_status ew_settings_check(const ew_parameter_values *values, ew_error *error) 
     status = check_roots(values, settings, error);
   if (status != EW_OK)
     return status;
-  if (!(settings->stars.supernova_mass < settings->stars.collapse_mass))
-    return ew_parameters_refuse(values, "enrichment.collapse_mass", error,
-                                "must lie above enrichment.supernova_mass = %g Msun", settings->stars.supernova_mass);
   ew_error reason = {0};
   const char *name = NULL;
   if (ew_model_check(&settings->model, &name, &reason) != EW_OK)
