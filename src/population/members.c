@@ -53,11 +53,11 @@ static ew_status admit_galaxy(ew_evolution *evolution, ew_household *home, const
   return EW_OK;
 }
 
-/* A starless halo is kept only if it will heat the host's stars. */
+/* A starless halo is kept if it can heat the stars that the host will have when it arrives. */
 static ew_status admit_dark(ew_evolution *evolution, ew_household *home, const ew_branch *branch, ew_error *error) {
   double mass = evolution->tree->mass[branch->first_node + branch->node_count - 1];
   double ratio = mass / evolution->environment.halo.mass;
-  if (ratio < evolution->model->sizes.smallest_merger || !ew_galaxy_has_stars(home->galaxy))
+  if (ratio < evolution->model->sizes.smallest_merger)
     return EW_OK;
   ew_member *halo = new_member(evolution, branch, NULL);
   if (!halo)

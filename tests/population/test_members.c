@@ -282,6 +282,20 @@ static void a_tiny_dark_halo_only_brings_its_gas(void **state) {
   assert_null(member_of_branch(s, SATELLITE));
 }
 
+/* It falls in with the very growth that lets the host cool its first gas, and arrives when the host has stars. */
+static void a_dark_halo_older_than_the_stars_is_counted(void **state) {
+  stage *s = *state;
+  ADD_BRANCH(&s->draft, HOST, {21, 1e6}, {20, 5e6});
+  ADD_BRANCH(&s->draft, NO_HOST, {20.3, 2e5}, {20, 2.5e7}, {20, 3e7}, {8, 5e8}, {0, 2e9});
+  ew_model model = s->laboratory->settings.model;
+  model.first_stars.threshold = EW_FIRST_STARS_ATOMIC;
+  model.satellites.friction_factor = 0.3;
+  run_draft(s, 1, &model);
+  check_books(s);
+  assert_true(s->rows[0].observed.stellar_mass_formed > 0.0);
+  assert_int_equal(s->rows[0].observed.dark_mergers, 1);
+}
+
 /* ----------------------------------------------------------------------------------------------- members of members */
 
 enum { INNER, OUTER, ROOT };
@@ -538,6 +552,7 @@ int main(void) {
       ON_STAGE(a_dark_halo_merges_and_is_counted),
       ON_STAGE(a_small_dark_halo_merges_and_is_not_counted),
       ON_STAGE(a_tiny_dark_halo_only_brings_its_gas),
+      ON_STAGE(a_dark_halo_older_than_the_stars_is_counted),
       ON_STAGE(members_come_along),
       ON_STAGE(members_are_handed_on_when_theirs_merges),
       ON_STAGE(a_member_merges_with_a_member),
