@@ -77,7 +77,7 @@ static void test_parameter_files_are_checked(void **state) {
       {"roots: { kind = \"rang\"; };\n", "roots.kind = \"rang\""},
       {"roots: { mass_range = [3e10, 1e8]; };\n", "roots.mass_range"},
       {"roots: { count = 6; ", "wrong.cfg:1"},
-      {"cosmology: { omega_baryon = 0.2; omega_matter = 0.15; };\n", "omega_"},
+      {"cosmology: { omega_baryon = 0.2; omega_matter = 0.15; };\n", "wrong.cfg:1: cosmology.omega_baryon = 0.2"},
       {"trees: { resolution_mass = 1e9; };\n", "roots.mass_range"},
   };
   for (size_t i = 0; i < sizeof wrong / sizeof wrong[0]; i++) {

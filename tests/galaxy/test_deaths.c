@@ -49,6 +49,18 @@ static size_t slots_until_death(stage *s, double life) {
   return 1000;
 }
 
+/* What the slot had to explode has exploded when stars form in it: theirs that die at once are the next slot's. */
+static void stars_born_after_the_explosions_wait_a_slot(void **state) {
+  stage *s = stage_fresh(state);
+  ew_galaxy *galaxy = galaxy_of_stars(s, GALAXY_KEY, 100.0);
+  stage_slot(s, 40);
+  schedule(s, galaxy, 0.02, 1.0);
+  assert_true(explode(s, galaxy) == 0.0);
+  schedule(s, galaxy, 0.001, 2.0);
+  stage_slot(s, 41);
+  assert_true(explode(s, galaxy) == 2.0);
+}
+
 /* Stars are born in the middle of a step. Of 10 Myr: those of 4 Myr die in it, of 42 Myr (8 Msun) four steps later. */
 static void stars_die_after_their_lives(void **state) {
   stage *s = stage_fresh(state);
@@ -208,6 +220,7 @@ static void stars_born_after_a_pause_live_their_time(void **state) {
 
 int main(void) {
   const struct CMUnitTest tests[] = {
+      cmocka_unit_test(stars_born_after_the_explosions_wait_a_slot),
       cmocka_unit_test(stars_die_after_their_lives),
       cmocka_unit_test(ring_is_longer_than_any_life),
       cmocka_unit_test(dying_stars_give_back_and_leave_remnants),

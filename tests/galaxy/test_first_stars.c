@@ -204,7 +204,7 @@ static ew_galaxy *after_explosion(stage *s, double star, double halo_gas, double
     if (ew_effective_supernovae(galaxy) > 0.0 && ew_composition_metals(&galaxy->ledger.in[EW_MADE]) != 0.0 &&
         *exploded_at == 0.0)
       *exploded_at = step.end;
-    assert_true(step.energy == 0.0); /* none of it drives winds as well */
+    assert_true(step.energy == 0.0 && step.supernovae == 0.0); /* none of it drives winds as well */
     stage_slot(s, s->environment.slot + 1);
   }
   stage_slot(s, slot);

@@ -17,6 +17,22 @@ static ew_patch patch_of(stage *s, uint64_t tree) {
   return patch;
 }
 
+/* Molecules help early on, and no more once the patch is ionized. */
+static void thresholds_are_atomic_after_reionization(void **state) {
+  stage *s = stage_fresh(state);
+  s->settings.model.first_stars.threshold = EW_FIRST_STARS_MOLECULAR;
+  s->settings.model.first_stars.streaming_rms = 0.0; /* else they are atomic before in some patches */
+  s->settings.model.first_stars.background = 0.0;
+  ew_patch patch;
+  ew_error error = {0};
+  assert_fine(ew_patch_draw(&patch, &s->world, &s->settings.model, &s->calendar, &s->draws, s->arena, &error), &error);
+  for (size_t k = 0; k < s->calendar.slot_count; k++) {
+    bool ionized = s->calendar.redshift[k] < patch.reionization_redshift, young = s->calendar.redshift[k] < 30.0;
+    if (ionized || young)
+      assert_true(ionized == (patch.threshold_mass[k] == s->calendar.atomic_mass[k]));
+  }
+}
+
 /* Share of a Maxwell distribution below x times its rms: erf(y) - 2 y exp(-y^2)/sqrt(pi), y^2 = 3 x^2/2. */
 static double maxwell_below(double x) {
   double y = sqrt(1.5) * x;
@@ -165,6 +181,7 @@ static void external_metals_are_those_of_supernovae(void **state) {
 
 int main(void) {
   const struct CMUnitTest tests[] = {
+      cmocka_unit_test(thresholds_are_atomic_after_reionization),
       cmocka_unit_test(streaming_is_maxwellian),
       cmocka_unit_test(no_streaming_when_it_is_switched_off),
       cmocka_unit_test(patches_are_ionized_about_the_mean),

@@ -4,7 +4,9 @@
  * early end on a whole tree. */
 #include "ensemble.h"
 
+#include <signal.h>
 #include <sys/resource.h>
+#include <unistd.h>
 
 enum { COUNT = 60, SLICE_FIRST = 7, SLICE_COUNT = 20, STOP_AFTER = 10 };
 
@@ -312,6 +314,32 @@ static void a_run_stopped_before_it_starts_does_nothing(void **state) {
   assert_int_equal(r.kept.tree_count, 0);
 }
 
+static volatile sig_atomic_t alarm_rang;
+
+static void ring(int signal_number) {
+  (void)signal_number;
+  alarm_rang = 1;
+}
+
+/* One tree with realizations for hours: the flag is heeded within the tree, which is dropped. */
+static void a_stop_does_not_wait_for_the_tree(void **state) {
+  (void)state;
+  ew_laboratory *laboratory = LABORATORY("roots.count=1", "roots.mass_range=[1e9, 2e9]", "trees.resolution_mass=1e6",
+                                         "ensemble.realizations=1000000");
+  ew_plan plan = plan_of(laboratory);
+  plan.stop = &alarm_rang;
+  ew_error error = {0};
+  harvest kept = {0};
+  uint64_t done = 1;
+  signal(SIGALRM, ring);
+  alarm(1);
+  assert_int_equal(ew_run(&plan, &(ew_row_sink){keep_rows, &kept}, &done, &error), EW_FAILED);
+  assert_string_equal(error.message, EW_INTERRUPTED);
+  assert_int_equal(done, 0);
+  assert_int_equal(kept.tree_count, 0);
+  ew_laboratory_free(laboratory);
+}
+
 /* Raised too late to matter: everything was taken. */
 static void a_flag_raised_with_the_last_tree_is_no_failure(void **state) {
   reluctant r = {.limit = COUNT};
@@ -399,6 +427,7 @@ int main(void) {
       cmocka_unit_test(memory_does_not_grow_with_realizations),
       cmocka_unit_test(a_stopped_run_leaves_a_whole_prefix),
       cmocka_unit_test(a_run_stopped_before_it_starts_does_nothing),
+      cmocka_unit_test(a_stop_does_not_wait_for_the_tree),
       cmocka_unit_test(a_flag_raised_with_the_last_tree_is_no_failure),
       cmocka_unit_test(a_failing_sink_ends_the_run_with_its_error),
       cmocka_unit_test(a_sink_that_fails_without_a_word_ends_the_run_too),

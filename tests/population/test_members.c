@@ -333,6 +333,7 @@ static void members_are_handed_on_when_theirs_merges(void **state) {
     handed_on++;
     assert_null(inner->bound_to);
     assert_int_equal(inner->infalls, 2);
+    assert_true(inner->mass_ratio < 0.05); /* 3e8 to the central's 9e9, not to the 2.7e9 of what it came with */
     assert_int_equal(s->count, 2);
     assert_non_null(row_of_branch(s, INNER));
   }
