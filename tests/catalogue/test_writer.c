@@ -2,26 +2,13 @@
  *
  * The catalogue file with invented rows: every field comes back in the column of its name. */
 #include "elfinwood/catalogue.h"
-#include "look.h"
+#include "folder.h"
 
 #include <math.h>
 
 enum { TREES = 40, PER_TREE = 3 };
 
-static look_path folder;
 static const ew_catalogue_header header = {"ensemble: { realizations = 3; };\n", 23};
-
-static int make_folder(void **state) {
-  (void)state;
-  folder = look_make_folder();
-  return 0;
-}
-
-static int remove_folder(void **state) {
-  (void)state;
-  look_remove_folder(folder);
-  return 0;
-}
 
 /* Fills every column with a value of its own, by the table. */
 static void fill(void *row, const ew_column *columns, size_t count, int64_t number) {

@@ -4,20 +4,9 @@
  * what stood on the disk before unharmed. */
 #include "program.h"
 
-static look_path folder;
-
-static int make_folder(void **state) {
-  (void)state;
-  folder = look_make_folder();
-  look_write_text(look_join(folder, "small.cfg"), PROGRAM_SMALL);
-  return 0;
-}
-
-static int remove_folder(void **state) {
-  (void)state;
-  look_remove_folder(folder);
-  return 0;
-}
+#define FOLDER_FILE "small.cfg"
+#define FOLDER_TEXT PROGRAM_SMALL
+#include "folder.h"
 
 static void test_an_output_that_cannot_be_written_is_told_at_once(void **state) {
   (void)state;

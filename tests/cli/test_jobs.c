@@ -4,24 +4,13 @@
  * parameters that it carries. */
 #include "program.h"
 
+#define FOLDER_FILE "small.cfg"
+#define FOLDER_TEXT PROGRAM_SMALL
+#include "folder.h"
+
 #include <math.h>
 
 enum { TREES = 6, REALIZATIONS = 2 };
-
-static look_path folder;
-
-static int make_folder(void **state) {
-  (void)state;
-  folder = look_make_folder();
-  look_write_text(look_join(folder, "small.cfg"), PROGRAM_SMALL);
-  return 0;
-}
-
-static int remove_folder(void **state) {
-  (void)state;
-  look_remove_folder(folder);
-  return 0;
-}
 
 static void test_run_writes_a_catalogue_named_after_the_file(void **state) {
   (void)state;

@@ -3,20 +3,9 @@
  * What the program refuses, and how it says so: exit status 2, one line on stderr, nothing written. */
 #include "program.h"
 
-static look_path folder;
-
-static int make_folder(void **state) {
-  (void)state;
-  folder = look_make_folder();
-  look_write_text(look_join(folder, "small.cfg"), PROGRAM_SMALL);
-  return 0;
-}
-
-static int remove_folder(void **state) {
-  (void)state;
-  look_remove_folder(folder);
-  return 0;
-}
+#define FOLDER_FILE "small.cfg"
+#define FOLDER_TEXT PROGRAM_SMALL
+#include "folder.h"
 
 static void test_help_and_version_go_to_standard_output(void **state) {
   (void)state;

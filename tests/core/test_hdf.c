@@ -3,7 +3,7 @@
  * Files of columns: what goes in comes out, and whatever goes wrong leaves whole records. Failures happen in child
  * processes: a file that may not grow further stands for a full disk, a kill for a power cut. */
 #include "core/hdf.h"
-#include "look.h"
+#include "folder.h"
 
 #include <signal.h>
 #include <sys/resource.h>
@@ -19,20 +19,6 @@ typedef struct {
 static const ew_hdf_column_header number_header = {"/records/number", EW_HDF_INTEGER, 1, CHUNK, "1", "its number"};
 static const ew_hdf_column_header value_header = {"/values/value", EW_HDF_REAL, 1, CHUNK, "Msun", "five to a record"};
 static const ew_hdf_column_header wide_header = {"/values/wide", EW_HDF_KEY, WIDTH, CHUNK, "1", "one row to a record"};
-
-static look_path folder;
-
-static int make_folder(void **state) {
-  (void)state;
-  folder = look_make_folder();
-  return 0;
-}
-
-static int remove_folder(void **state) {
-  (void)state;
-  look_remove_folder(folder);
-  return 0;
-}
 
 static ew_status create(sample *made, const char *path, ew_error *error) {
   *made = (sample){0};

@@ -2,21 +2,7 @@
  *
  * The tree file: two small trees laid out by hand, and what the file must say of them. */
 #include "elfinwood/tree.h"
-#include "look.h"
-
-static look_path folder;
-
-static int make_folder(void **state) {
-  (void)state;
-  folder = look_make_folder();
-  return 0;
-}
-
-static int remove_folder(void **state) {
-  (void)state;
-  look_remove_folder(folder);
-  return 0;
-}
+#include "folder.h"
 
 /* A main branch of four nodes that one branch of two nodes joins at its second and third. */
 static const ew_branch first_branches[] = {
